@@ -1,0 +1,89 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/*
+ * layer: the table of protocol layers, one row each.
+ *
+ * A row says how many octets a layer puts around what it carries, and what may
+ * lie below it.  Nothing outside layer.c names a layer's octets; parser, help,
+ * arithmetic and tests walk the table.  Pure.
+ */
+#ifndef PLAFOND_LAYER_H
+#define PLAFOND_LAYER_H
+
+#include <stdbool.h>
+#include <stddef.h>
+#include <stdint.h>
+
+#include "field.h"
+#include "trial.h"
+
+struct error;
+
+/* Where the rate of a layer is counted; also the order of a stack. */
+enum layer_level {
+	LEVEL_LINE,		/* L1: frame with preamble, SFD and gap */
+	LEVEL_FRAME,		/* L2: header to FCS */
+	LEVEL_FRAME_WITHOUT_FCS,	/* counting only, never a layer's own */
+	LEVEL_PACKET,		/* L3 */
+	LEVEL_SEGMENT,		/* L4 with its header */
+	LEVEL_PAYLOAD,		/* what the application hands over */
+	LEVELS
+};
+const char *level_name(enum layer_level level);	/* "line", "frame", ... */
+extern const struct choice level_choices[];	/* for counted-at */
+
+/* Options that a declaration can give to a layer; each row's fields point into
+ * this struct and the rest stays at 0. */
+struct layer_options {
+	uint64_t timestamps;		/* tcp: 0 or 1 */
+	uint64_t options_bytes;		/* ipv4, tcp: further header options */
+	uint64_t version;		/* tls: 12, 13 */
+	uint64_t cipher;		/* tls: row of the cipher's overhead */
+	uint64_t record_bytes;		/* tls: plaintext a record */
+};
+
+/* len = head + roundup(len + trail, align) + tail; at least min; plus before
+ * and gap; times num/den.  With record_bytes the octets are those around one
+ * record of that many carried octets, whatever the packets are. */
+struct layer_cost {
+	uint64_t before_bytes;		/* preamble and SFD */
+	uint64_t head_bytes;
+	uint64_t trail_bytes;
+	uint64_t align_bytes;		/* 1: none */
+	uint64_t tail_bytes;		/* FCS, tag */
+	uint64_t min_bytes;		/* of head + carried + tail */
+	uint64_t gap_bytes;
+	uint64_t num, den;
+	uint64_t record_bytes;		/* 0: the layer counts a packet */
+};
+
+struct layer {
+	const char *name;		/* "ethernet"; NULL ends the table */
+	const char *title;		/* "Ethernet II" */
+	/* PACKET: IP; SEGMENT: a transport; PAYLOAD: above it; FRAME: with a
+	 * header of its own below IP; LINE: below frames (cells, coding). */
+	enum layer_level level;
+	const char *const *below;	/* names; "": a medium */
+	uint64_t default_mtu_bytes;	/* what it lets through; 0: no say */
+	uint64_t min_mtu_bytes;		/* an IP layer's least MTU, else 0 */
+	unsigned ip_version;		/* 4, 6, or 0 */
+	struct layer_cost cost;		/* without options */
+	/* Adds what the options cost; NULL where there are none.  -1: the
+	 * options do not go together. */
+	int (*adjust)(const struct layer_options *options,
+	    struct layer_cost *cost, struct error *err);
+	const struct field *fields;	/* options, offsets in layer_options */
+	/* What a ladder calls the parts: head to tail, the same with options,
+	 * before and gap, num/den. */
+	const char *inside, *inside_with_options, *around, *coding;
+	const char *formula;		/* for `plafond layers` */
+	const char *source;		/* short: it stands in a column */
+};
+
+extern const struct layer layer_table[];	/* ends with name NULL */
+const struct layer *layer_find(const char *name);
+
+/* Names of the layers that a trial of this protocol puts on top of IP, lowest
+ * first, NULL at the end. */
+const char *const *protocol_layers(enum protocol protocol);
+
+#endif
