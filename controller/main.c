@@ -11,6 +11,9 @@ static const struct command *const commands[] = {
 	&command_ceiling,
 	&command_media,
 	&command_layers,
+	&command_ready,
+	&command_accept,
+	&command_identity,
 };
 #define COMMANDS_COUNT (sizeof(commands) / sizeof(commands[0]))
 
