@@ -16,6 +16,7 @@
 #include "handover.h"
 #include "hex.h"
 #include "host.h"
+#include "log.h"
 #include "policy.h"
 #include "transfer.h"
 
@@ -79,6 +80,19 @@ count_interface(const struct flow *flow)
 	    flow->is_sender);
 }
 
+/* Say why, to the log and to the controller. */
+static void
+lose(const struct flow *flow, const struct error *why,
+    struct measurement *measurement)
+{
+	char text[1024];
+
+	(void)snprintf(measurement->why, sizeof(measurement->why), "%s",
+	    error_text(why, text, sizeof(text)));
+	log_warning("transfer_lost", "direction=%s reason=\"%s\"",
+	    direction_name(flow->direction), measurement->why);
+}
+
 static void
 on_done(struct transfer *transfer, enum measurement_end end,
     const struct error *why, void *arg)
@@ -88,9 +102,11 @@ on_done(struct transfer *transfer, enum measurement_end end,
 	struct measurement measurement;
 	uint64_t now_bytes = count_interface(flow);
 
-	(void)why;
 	transfer_totals(transfer, &measurement);
 	measurement.end = end;
+	memset(measurement.why, 0, sizeof(measurement.why));
+	if (end == MEASUREMENT_PEER_LOST)
+		lose(flow, why, &measurement);
 	measurement.interface_bytes = UNKNOWN_U64;
 	if (now_bytes != UNKNOWN_U64 && flow->interface_bytes != UNKNOWN_U64)
 		measurement.interface_bytes = now_bytes -

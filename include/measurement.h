@@ -105,6 +105,7 @@ struct measurement {
 	enum direction direction;	/* single */
 	bool is_receiver;
 	enum measurement_end end;
+	char why[128];		/* of MEASUREMENT_PEER_LOST, else "" */
 	uint64_t zero_ns;	/* agent's session clock at the zero */
 	uint64_t settle_ns;	/* as it came out; receiver only */
 	uint64_t duration_ns;	/* of the window; receiver only */

@@ -173,7 +173,8 @@ static const struct wire_member sample_members[] = {
 static const struct wire_member measurement_members[] = {
 	NAME(measurement, direction, single_direction_names, ""),
 	BOOL(measurement, is_receiver, ""),
-	NAME(measurement, end, measurement_end_names, "why it ended"),
+	NAME(measurement, end, measurement_end_names, "how it ended"),
+	TEXT(measurement, why, "a stream was lost, for a person"),
 	U64(measurement, zero_ns, 0, 0, "agent's session clock at zero"),
 	U64(measurement, settle_ns, 0, 0, "as it came out"),
 	U64(measurement, duration_ns, 0, 0, "counted"),

@@ -9,6 +9,7 @@
 
 
 #include "clock.h"
+#include "log.h"
 #include "units.h"
 
 int
@@ -61,7 +62,7 @@ __attribute__((format(printf, 3, 4)))
 static void
 fail(struct run *run, enum end end, const char *fmt, ...)
 {
-	char what[160];
+	char what[384];
 	va_list ap;
 
 	if (run->out->failed)
@@ -154,12 +155,16 @@ run_measurement(struct run *run, enum end end,
 	check_digest(run, end, measurement);
 	if (measurement->is_receiver) {
 		direction->receiver = *measurement;
+		(void)log_escape(measurement->why, direction->receiver.why,
+		    sizeof(direction->receiver.why));
 		direction->receiver_reported = true;
 		memcpy(direction->series.sha256, measurement->sha256,
 		    sizeof(direction->series.sha256));
 		return;
 	}
 	direction->sender = *measurement;
+	(void)log_escape(measurement->why, direction->sender.why,
+	    sizeof(direction->sender.why));
 	direction->sender_reported = true;
 	direction->interface_bytes = measurement->interface_bytes;
 }
@@ -263,8 +268,12 @@ run_finish(struct run *run, const struct exchange_sample clocks[ENDS])
 			tell_rows(direction, run->overlaps[d]);
 		if (!direction->counted)
 			fail(run, direction_receiver((enum direction)d),
-			    "direction %s was not measured to its end",
-			    direction_name((enum direction)d));
+			    "direction %s was not measured to its end%s%s%s%s",
+			    direction_name((enum direction)d),
+			    direction->sender.why[0] != '\0' ?
+			    "; at the sender " : "", direction->sender.why,
+			    direction->receiver.why[0] != '\0' ?
+			    "; at the receiver " : "", direction->receiver.why);
 	}
 	if (out->trial.direction == DIRECTION_BOTH && all_counted(out))
 		count_overlap(run, clocks);
