@@ -54,19 +54,6 @@ transfer_phase_name(enum transfer_phase phase)
 }
 
 int
-transfer_phase_from_name(const char *name, enum transfer_phase *out)
-{
-	for (unsigned i = 0; i < sizeof(phase_names) / sizeof(*phase_names);
-	    i++) {
-		if (strcmp(phase_names[i], name) == 0) {
-			*out = (enum transfer_phase)i;
-			return 0;
-		}
-	}
-	return -1;
-}
-
-int
 transfer_prepare_socket(int fd, int family, const struct trial *trial,
     bool is_sender, struct error *err)
 {

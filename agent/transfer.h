@@ -29,7 +29,6 @@ struct transfer;
 enum transfer_phase { TRANSFER_WAITING, TRANSFER_SETTLING, TRANSFER_COUNTING,
 	TRANSFER_CLOSED };
 const char *transfer_phase_name(enum transfer_phase phase);
-int transfer_phase_from_name(const char *name, enum transfer_phase *out);
 
 /* One finished interval; all borrowed for the call. */
 struct transfer_row {

@@ -169,7 +169,8 @@ make_plan(struct acceptance *a)
 	for (int d = 0; d < DIRECTIONS_SINGLE; d++)
 		facts.window_bytes[d] = window_bytes(a, (enum direction)d);
 	plan_make(a->circuit, a->ceilings, &facts, &a->plan);
-	a->typical_ns = a->plan.trials[0].settle_ns + NS_PER_S +
+	a->typical_ns = a->plan.trials[0].settle_ns +
+	    (a->plan.trials[0].settle_extends ? NS_PER_S : 0) +
 	    a->plan.trials[0].duration_ns;
 }
 
@@ -178,6 +179,20 @@ measure_references(struct acceptance *a, struct error *err)
 {
 	progress_say(&a->progress, "bare copy loop on the host ...");
 	return preflight_reference(a->pair, &a->preflight, err);
+}
+
+/* Said once on a terminal, before the load begins. */
+static void
+announce(struct acceptance *a)
+{
+	char time[32];
+
+	if (!a->progress.shown)
+		return;
+	progress_say(&a->progress, "");
+	(void)fprintf(stderr, "%zu trials that fill the circuit, at most %s\n",
+	    a->plan.count, units_format(plan_duration_ns(&a->plan),
+	    DIMENSION_TIME, 0, time, sizeof(time)));
 }
 
 /* A request that the agents refuse before anything was measured is an error of
@@ -327,6 +342,7 @@ conduct(struct acceptance *a, struct error *err)
 	if (measure_references(a, err) == -1)
 		return -1;
 	make_plan(a);
+	announce(a);
 	a->trials = calloc(a->plan.count, sizeof(*a->trials));
 	if (a->trials == NULL)
 		return error_errno(err, ERROR_INTERNAL, "trials");

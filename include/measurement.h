@@ -98,7 +98,6 @@ enum measurement_end {
 };
 extern const char *const measurement_end_names[MEASUREMENT_ENDS + 1];
 const char *measurement_end_name(enum measurement_end end);
-int measurement_end_from_name(const char *name, enum measurement_end *out);
 
 /* Totals of one direction at one agent. */
 struct measurement {

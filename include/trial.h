@@ -35,7 +35,6 @@ const char *protocol_name(enum protocol protocol);
 /* -1: no such name */
 int direction_from_name(const char *name, enum direction *out);
 int end_from_name(const char *name, enum end *out);
-int protocol_from_name(const char *name, enum protocol *out);
 
 /* Who sends and who receives in one single direction. */
 enum end direction_sender(enum direction direction);

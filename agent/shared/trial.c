@@ -81,28 +81,6 @@ end_from_name(const char *name, enum end *out)
 	return 0;
 }
 
-int
-protocol_from_name(const char *name, enum protocol *out)
-{
-	int found = find_name(protocol_names, PROTOCOLS, name);
-
-	if (found == -1)
-		return -1;
-	*out = (enum protocol)found;
-	return 0;
-}
-
-int
-measurement_end_from_name(const char *name, enum measurement_end *out)
-{
-	int found = find_name(measurement_end_names, MEASUREMENT_ENDS, name);
-
-	if (found == -1)
-		return -1;
-	*out = (enum measurement_end)found;
-	return 0;
-}
-
 enum end
 direction_sender(enum direction direction)
 {

@@ -299,12 +299,6 @@ pair_capability(const struct pair *pair, enum end end)
 	return &pair->links[end].capability;
 }
 
-const struct wire_hello *
-pair_hello(const struct pair *pair, enum end end)
-{
-	return &pair->links[end].hello;
-}
-
 bool
 pair_clock(const struct pair *pair, enum end end, struct exchange_sample *out)
 {

@@ -47,7 +47,6 @@ void pair_close(struct pair *pair);	/* NULL is fine */
 /* Borrowed, until pair_close. */
 const struct wire_capability *pair_capability(const struct pair *pair,
     enum end end);
-const struct wire_hello *pair_hello(const struct pair *pair, enum end end);
 /* Best sample so far: the agent's clock against ours. */
 bool pair_clock(const struct pair *pair, enum end end,
     struct exchange_sample *out);
