@@ -11,7 +11,7 @@
 #include <stddef.h>
 #include <stdio.h>
 
-#define COLUMNS_MAX 8
+#define COLUMNS_MAX 10
 #define COLUMNS_PAGE 80
 
 struct columns;

@@ -46,9 +46,14 @@ int document_read_text(const char *text, size_t size, const char *origin,
 void document_free(struct node *root);	/* NULL is fine */
 
 /* Put the YAML value of "a.b.0.c=VALUE" into the tree, making mappings on the
- * way; a number names an item of a list.  The node's origin is "--set a.b". */
+ * way; a number names an item of a list, and an item that is a bare name stands
+ * for a mapping of that name.  The node's origin is "--set a.b". */
 int document_override(struct node *root, const char *assignment,
     struct error *err);
+/* The same of a key and its value, with another option's name in the origin:
+ * "--sweep a.b". */
+int document_put(struct node *root, const char *option, const char *key,
+    const char *value, struct error *err);
 
 const struct node *node_child(const struct node *mapping, const char *key);
 
@@ -97,6 +102,12 @@ struct field {
 	 * absent mapping that is not required, no complaint). */
 	int (*read)(const struct node *node, const struct field *field,
 	    void *base, struct error *err);
+	/* CUSTOM: the rows that the node makes apply, NULL where its keys are
+	 * no rows.  *key is what follows the row's own name ("3.tls.version",
+	 * or ""), and is moved on to what names one of *rows; *rows NULL: the
+	 * key ends before.  -1: ERROR_USAGE, with what is allowed. */
+	int (*rows_of)(const struct node *node, const char **key,
+	    const struct field **rows, struct error *err);
 	const char *help;	/* one line, with the unit and the source */
 };
 
@@ -107,6 +118,14 @@ struct field {
  * *base is then in part filled. */
 int fields_read(const struct node *node, const struct field *rows,
     const char *what, void *base, struct error *err);
+
+/* The row that a key as in document_override leads to, in the tree as it
+ * stands: "mtu", "segments.0.medium.line-rate", "service.committed.a-to-b".
+ * *below: the rows that lie below it, NULL where there are none.
+ * -1 (ERROR_USAGE): there is no such row; the nearest is named. */
+int field_find(const struct node *root, const struct field *rows,
+    const char *key, const struct field **out, const struct field **below,
+    struct error *err);
 
 /* One scalar text into one row's value (command line, defaults); for a row
  * per direction, into one of the two.  at NULL: no place. */

@@ -3,6 +3,7 @@
 #include "field.h"
 
 #include <inttypes.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -12,16 +13,13 @@
 
 /* The place of an override in messages. */
 static char *
-override_origin(const char *key, size_t length)
+override_origin(const char *option, const char *key)
 {
-	static const char prefix[] = "--set ";
-	char *origin = malloc(sizeof(prefix) + length);
+	size_t size = strlen(option) + strlen(key) + 2;
+	char *origin = malloc(size);
 
-	if (origin != NULL) {
-		memcpy(origin, prefix, sizeof(prefix) - 1);
-		memcpy(origin + sizeof(prefix) - 1, key, length);
-		origin[sizeof(prefix) - 1 + length] = '\0';
-	}
+	if (origin != NULL)
+		(void)snprintf(origin, size, "%s %s", option, key);
 	return origin;
 }
 
@@ -83,6 +81,23 @@ new_mapping(const char *key, const char *origin)
 	return node;
 }
 
+/* The item `- tls` of a list is short for `- tls: {}`.  -1: out of memory. */
+static int
+lengthen_item(struct node *item, const char *part, const char *origin,
+    struct error *err)
+{
+	if (item->kind != NODE_SCALAR || item->key != NULL ||
+	    strcmp(item->text, part) != 0)
+		return 0;
+	item->children = new_mapping(part, origin);
+	if (item->children == NULL)
+		return document_no_memory(err);
+	item->kind = NODE_MAPPING;
+	free(item->text);
+	item->text = NULL;
+	return 0;
+}
+
 /* Put *value where the parts of key lead; they are cut apart in place.  Takes
  * *value and sets it to NULL on success. */
 static int
@@ -93,6 +108,9 @@ put_value(struct node *root, char *key, struct node **value,
 	char *rest = key, *part;
 
 	while ((part = strsep(&rest, ".")) != NULL) {
+		if (rest != NULL &&
+		    lengthen_item(parent, part, origin, err) == -1)
+			return -1;
 		slot = find_slot(parent, part, origin, err);
 		if (slot == NULL)
 			return -1;
@@ -134,35 +152,49 @@ count_parts(const char *key)
 }
 
 int
+document_put(struct node *root, const char *option, const char *key,
+    const char *text, struct error *err)
+{
+	char *origin = override_origin(option, key), *parts = strdup(key);
+	struct node place = { .origin = origin }, *value = NULL;
+	unsigned count = count_parts(key);
+	int rc = -1;
+
+	if (origin == NULL || parts == NULL)
+		(void)document_no_memory(err);
+	else if (count == 0)
+		(void)node_error(&place, err, "an empty name in the key, "
+		    "allowed: KEY=VALUE such as medium.line-rate=1 Gbit/s");
+	else if (document_read_value(text, origin, count, &value, err) == 0)
+		rc = put_value(root, parts, &value, origin, err);
+	document_free(value);
+	free(parts);
+	free(origin);
+	return rc;
+}
+
+int
 document_override(struct node *root, const char *assignment,
     struct error *err)
 {
+	static const char option[] = "--set";
 	const char *equals = strchr(assignment, '=');
-	size_t length = equals != NULL ? (size_t)(equals - assignment) :
-	    strlen(assignment);
-	char *origin = override_origin(assignment, length);
-	char *key = strndup(assignment, length);
-	struct node place = { .origin = origin }, *value = NULL;
-	unsigned parts;
-	int rc = -1;
+	char *key, *origin;
+	int rc;
 
-	if (origin == NULL || key == NULL) {
-		(void)document_no_memory(err);
-		goto out;
+	if (equals != NULL) {
+		key = strndup(assignment, (size_t)(equals - assignment));
+		if (key == NULL)
+			return document_no_memory(err);
+		rc = document_put(root, option, key, equals + 1, err);
+		free(key);
+		return rc;
 	}
-	parts = count_parts(key);
-	if (equals == NULL || parts == 0) {
-		(void)node_error(&place, err, equals == NULL ?
-		    "no '=', allowed: KEY=VALUE" :
-		    "an empty name in the key, allowed: KEY=VALUE such as "
-		    "medium.line-rate=1 Gbit/s");
-		goto out;
-	}
-	if (document_read_value(equals + 1, origin, parts, &value, err) == 0)
-		rc = put_value(root, key, &value, origin, err);
-out:
-	document_free(value);
-	free(key);
+	origin = override_origin(option, assignment);
+	if (origin == NULL)
+		return document_no_memory(err);
+	(void)node_error(&(struct node){ .origin = origin }, err,
+	    "no '=', allowed: KEY=VALUE");
 	free(origin);
-	return rc;
+	return -1;
 }

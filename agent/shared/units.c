@@ -157,6 +157,9 @@ take_number(const char **p, enum dimension dimension, struct fraction *out,
 	if (**p == '\0')
 		return error_set(err, ERROR_INPUT, "empty; known: %s",
 		    scale_words[dimension].allowed);
+	if (strncmp(*p, "-inf", 4) == 0 && scale_words[dimension].sign)
+		return error_set(err, ERROR_INPUT, "minus infinity is a "
+		    "ratio of 0: no signal, at which nothing is carried");
 	if (**p == '-' && scale_words[dimension].sign) {
 		out->negative = true;
 		(*p)++;

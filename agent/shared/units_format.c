@@ -44,11 +44,9 @@ static const char *
 write_scaled(uint64_t whole, const char *decimals, struct scale scale,
     char *buf, size_t size)
 {
-	char symbol[SYMBOL_SIZE];
-
-	(void)snprintf(buf, size, "%" PRIu64 "%s%s %s", whole,
-	    decimals[0] != '\0' ? "." : "", decimals,
-	    scale_symbol(scale, symbol));
+	(void)snprintf(buf, size, "%" PRIu64 "%s%s %s%s", whole,
+	    decimals[0] != '\0' ? "." : "", decimals, scale.prefix->symbol,
+	    scale.unit->symbol);
 	return buf;
 }
 
@@ -75,37 +73,54 @@ units_format(uint64_t value, enum dimension dimension, unsigned digits,
 	    scales[best], buf, size);
 }
 
+/* Length of what write_scaled writes. */
+static size_t
+scaled_length(uint64_t whole, unsigned decimals, struct scale scale)
+{
+	size_t length = 1;
+
+	for (; whole > 9; whole /= 10)
+		length++;
+	return length + (decimals > 0 ? 1 + decimals : 0) + 1 +
+	    strlen(scale.prefix->symbol) + strlen(scale.unit->symbol);
+}
+
 const char *
 units_format_exact(uint64_t value, enum dimension dimension, char *buf,
     size_t size)
 {
 	struct scale scales[SCALES_MAX];
 	size_t count = scale_collect(dimension, true, scales);
-	size_t best_length = SIZE_MAX;
-	unsigned best_decimals = 0;
+	size_t best = count, best_length = SIZE_MAX;
+	char decimals[DECIMALS_MAX + 1];
+	unsigned used, best_used = 0;
+	uint64_t rest;
 
 	assert(scale_words[dimension].whole != NULL);
-	(void)snprintf(buf, size, "%s", scale_words[dimension].zero);
 	for (size_t i = 0; i < count; i++) {
-		uint64_t step = whole_size(scales[i]), rest;
-		char decimals[DECIMALS_MAX + 1], text[64];
-		unsigned used;
+		uint64_t step = whole_size(scales[i]);
 		size_t length;
 
 		if (step > value)
 			continue;
 		used = write_decimals(value, step, DECIMALS_MAX, decimals,
 		    &rest);
-		length = strlen(write_scaled(value / step, decimals, scales[i],
-		    text, sizeof(text)));
+		length = scaled_length(value / step, used, scales[i]);
 		if (rest != 0 || length > best_length ||
-		    (length == best_length && used > best_decimals))
+		    (length == best_length && used > best_used))
 			continue;
+		best = i;
 		best_length = length;
-		best_decimals = used;
-		(void)snprintf(buf, size, "%s", text);
+		best_used = used;
 	}
-	return buf;
+	if (best == count) {
+		(void)snprintf(buf, size, "%s", scale_words[dimension].zero);
+		return buf;
+	}
+	(void)write_decimals(value, whole_size(scales[best]), DECIMALS_MAX,
+	    decimals, &rest);
+	return write_scaled(value / whole_size(scales[best]), decimals,
+	    scales[best], buf, size);
 }
 
 static long double

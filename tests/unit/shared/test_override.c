@@ -185,6 +185,27 @@ a_root_that_is_no_collection_takes_no_override(void **state)
 	document_free(root);
 }
 
+/* `- ethernet` and `- ethernet: {}` say the same. */
+static void
+a_bare_name_in_a_list_takes_what_lies_below_it(void **state)
+{
+	struct node *root = read_good(sample, "f");
+	struct error err = { 0 };
+
+	(void)state;
+	assert_int_equal(document_override(root, "layers.1.vlan.id=7", &err),
+	    0);
+	assert_int_equal(document_put(root, "--sweep", "layers.1.vlan.id",
+	    "8", &err), 0);
+	assert_string_equal(find(root, "layers.1.vlan.id")->text, "8");
+	assert_string_equal(find(root, "layers.1.vlan.id")->origin,
+	    "--sweep layers.1.vlan.id");
+	assert_string_equal(find(root, "layers.0")->text, "ethernet");
+	assert_int_equal(document_put(root, "--sweep", "a..b", "8", &err), -1);
+	assert_string_equal(err.where, "--sweep a..b");
+	document_free(root);
+}
+
 int
 main(void)
 {
@@ -193,6 +214,8 @@ main(void)
 		cmocka_unit_test(an_override_keeps_the_order_of_a_list),
 		cmocka_unit_test(errors_below_an_override_name_it_and_no_line),
 		cmocka_unit_test(a_bad_override_is_refused_and_changes_nothing),
+		cmocka_unit_test(
+		    a_bare_name_in_a_list_takes_what_lies_below_it),
 		cmocka_unit_test(overrides_reach_the_deepest_level),
 		cmocka_unit_test(
 		    a_root_that_is_no_collection_takes_no_override),
