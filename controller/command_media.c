@@ -15,13 +15,13 @@ print_table(FILE *out)
 	static const char *const head[] = { "medium", "accuracy",
 		"what it is" };
 	struct columns *columns = columns_new("llw");
-	const struct medium *medium;
+	size_t i;
 
 	columns_row(columns, head);
 	columns_rule(columns);
-	for (medium = medium_table; medium->name != NULL; medium++) {
-		const char *cells[] = { medium->name,
-			accuracy_name(medium->accuracy), medium->title };
+	for (i = 0; media[i] != NULL; i++) {
+		const char *cells[] = { media[i]->name,
+			accuracy_name(media[i]->accuracy), media[i]->title };
 
 		columns_row(columns, cells);
 	}
@@ -77,8 +77,8 @@ find_medium(const char *name, const struct medium **out, struct error *err)
 	*out = medium_find(name);
 	if (*out != NULL)
 		return 0;
-	for (i = 0; i < 64 && medium_table[i].name != NULL; i++)
-		names[i] = medium_table[i].name;
+	for (i = 0; i < 64 && media[i] != NULL; i++)
+		names[i] = media[i]->name;
 	return command_unknown("medium", name, names, i, err);
 }
 

@@ -2,10 +2,10 @@
 #include "ceiling/bound.h"
 
 #include <assert.h>
+#include <inttypes.h>
 #include <stdio.h>
 #include <string.h>
 
-#include "ceiling/capacity.h"
 #include "error.h"
 
 static const char *const class_names[] = {
@@ -21,16 +21,6 @@ bound_class_name(enum bound_class class)
 	return class_names[class];
 }
 
-/* Payload rate where a rate is counted at this level:
- * rate * payload octets / octets at the level. */
-static struct fraction
-payload_of(struct fraction rate, const struct overhead *overhead,
-    enum layer_level level)
-{
-	return fraction_multiply(rate, fraction_divide(
-	    overhead->octets[LEVEL_PAYLOAD], overhead->octets[level]));
-}
-
 /* " of segment 'access'", or nothing where there is only one. */
 static const char *
 segment_text(const struct circuit *circuit, size_t i, char *buf, size_t size)
@@ -43,30 +33,60 @@ segment_text(const struct circuit *circuit, size_t i, char *buf, size_t size)
 	return buf;
 }
 
-int
-bound_medium(const struct circuit *circuit, size_t i,
-    enum direction direction, const struct overhead *overhead,
-    struct exact_bound *out, struct error *err)
+static void
+start(enum bound_class class, size_t i, struct exact_bound *out)
 {
-	const struct segment *segment = &circuit->segments[i];
-	const struct medium *medium = segment->medium.medium;
-	char where[CIRCUIT_NAME_SIZE + 16];
-	struct fraction rate;
-
-	if (capacity_compute(&segment->medium, direction, &rate, err) == -1)
-		return -1;
 	memset(out, 0, sizeof(*out));
-	out->bound.class = BOUND_MEDIUM;
-	out->payload = payload_of(rate, overhead, LEVEL_LINE);
-	out->bound.payload_bps = fraction_floor(out->payload);
+	out->bound.class = class;
 	out->segment = i;
 	out->counted_at = LEVEL_PAYLOAD;
+}
+
+/* A rate over the octets that it counts for one packet. */
+static void
+set_payload(const struct path_segment *segment, struct fraction rate_bps,
+    struct fraction counted_octets, struct exact_bound *out)
+{
+	out->payload = fraction_multiply(rate_bps, fraction_divide(
+	    segment->overhead.octets[LEVEL_PAYLOAD], counted_octets));
+	out->bound.payload_bps = fraction_floor(out->payload);
+}
+
+void
+bound_medium(const struct circuit *circuit, size_t i,
+    const struct path_segment *segment, struct exact_bound *out)
+{
+	const struct medium *medium = circuit->segments[i].medium.medium;
+	char where[CIRCUIT_NAME_SIZE + 16];
+
+	start(BOUND_MEDIUM, i, out);
+	set_payload(segment, path_offered_bps(segment),
+	    path_octets_on_line(segment, LEVEL_LINE), out);
 	(void)snprintf(out->bound.name, sizeof(out->bound.name),
 	    "%s line%s", medium->name,
 	    segment_text(circuit, i, where, sizeof(where)));
 	(void)snprintf(out->bound.source, sizeof(out->bound.source), "%s",
 	    medium->source);
-	return 0;
+}
+
+bool
+bound_channel(const struct circuit *circuit, size_t i,
+    const struct path_segment *segment, struct exact_bound *out)
+{
+	uint64_t channel_bps = segment->capacity.channel_bps;
+	char where[CIRCUIT_NAME_SIZE + 16];
+
+	if (channel_bps == 0)
+		return false;
+	start(BOUND_MEDIUM, i, out);
+	set_payload(segment, fraction_multiply(fraction_whole(channel_bps),
+	    segment->share), path_octets_on_line(segment, LEVEL_LINE), out);
+	(void)snprintf(out->bound.name, sizeof(out->bound.name),
+	    "channel capacity%s", segment_text(circuit, i, where,
+	    sizeof(where)));
+	(void)snprintf(out->bound.source, sizeof(out->bound.source),
+	    "Shannon 1949: C = B log2(1 + S/N)");
+	return true;
 }
 
 /* "committed 100 Mbit/s at frame" */
@@ -86,17 +106,17 @@ name_contract(const struct service *service, enum direction direction,
 }
 
 static void
-contract_of(const struct service *service, enum direction direction,
-    const struct overhead *overhead, struct exact_bound *out)
+contract_of(const struct service *service, enum direction direction, size_t i,
+    const struct path_segment *segment, struct exact_bound *out)
 {
 	enum layer_level level = (enum layer_level)service->counted_at;
 
-	assert(overhead->has_level[level]);
-	memset(out, 0, sizeof(*out));
-	out->bound.class = BOUND_CONTRACT;
-	out->payload = payload_of(fraction_whole(service_rate(service,
-	    direction)), overhead, level);
-	out->bound.payload_bps = fraction_floor(out->payload);
+	assert(segment->overhead.has_level[level]);
+	start(BOUND_CONTRACT, i, out);
+	set_payload(segment, fraction_whole(service_rate(service, direction)),
+	    level == LEVEL_LINE && !segment->reference ?
+	    path_line_octets(segment) :
+	    path_octets_in_contract(segment, level), out);
 	out->counted_at = level;
 	if (service->burst_bytes[direction] != FIELD_UNSET)
 		out->burst_bytes = service->burst_bytes[direction];
@@ -104,7 +124,7 @@ contract_of(const struct service *service, enum direction direction,
 
 bool
 bound_segment_contract(const struct circuit *circuit, size_t i,
-    enum direction direction, const struct overhead *overhead,
+    enum direction direction, const struct path_segment *segment,
     struct exact_bound *out)
 {
 	const struct service *service = &circuit->segments[i].service;
@@ -112,8 +132,7 @@ bound_segment_contract(const struct circuit *circuit, size_t i,
 
 	if (!service_has_rate(service, direction))
 		return false;
-	contract_of(service, direction, overhead, out);
-	out->segment = i;
+	contract_of(service, direction, i, segment, out);
 	name_contract(service, direction, segment_text(circuit, i, where,
 	    sizeof(where)), &out->bound);
 	return true;
@@ -135,7 +154,7 @@ add_service(struct service *sum, const struct service *one,
 
 bool
 bound_circuit_contract(const struct circuit *circuit, size_t i,
-    enum direction direction, const struct overhead *overhead,
+    enum direction direction, const struct path_segment *segment,
     struct exact_bound *out)
 {
 	const struct service *services = circuit->services;
@@ -150,12 +169,37 @@ bound_circuit_contract(const struct circuit *circuit, size_t i,
 	sum = services[0];
 	for (n = 1; n < circuit->services_count; n++)
 		add_service(&sum, &services[n], direction);
-	contract_of(&sum, direction, overhead, out);
-	out->segment = i;
+	contract_of(&sum, direction, i, segment, out);
 	name_contract(&sum, direction, "", &out->bound);
 	if (circuit->services_count > 1)
 		(void)snprintf(out->bound.source, sizeof(out->bound.source),
 		    "declared: %zu services together",
 		    circuit->services_count);
+	return true;
+}
+
+bool
+bound_device(const struct circuit *circuit, size_t i,
+    const struct path_segment *segment, struct exact_bound *out)
+{
+	const struct device *device = &circuit->segments[i].device;
+	char where[CIRCUIT_NAME_SIZE + 16];
+	struct fraction packets = fraction_whole(1);
+
+	if (device->packets_per_s == FIELD_UNSET)
+		return false;
+	if (segment->acks_in_contract)
+		packets = fraction_add(packets, segment->acks_per_packet);
+	start(BOUND_CONTRACT, i, out);
+	out->payload = fraction_divide(fraction_multiply(fraction_whole(
+	    8 * device->packets_per_s),
+	    segment->overhead.octets[LEVEL_PAYLOAD]), packets);
+	out->bound.payload_bps = fraction_floor(out->payload);
+	(void)snprintf(out->bound.name, sizeof(out->bound.name),
+	    "%s at %" PRIu64 " packets/s%s", device->name[0] != '\0' ?
+	    device->name : "device", device->packets_per_s,
+	    segment_text(circuit, i, where, sizeof(where)));
+	(void)snprintf(out->bound.source, sizeof(out->bound.source),
+	    "declared");
 	return true;
 }

@@ -12,14 +12,13 @@
 #include <stddef.h>
 #include <stdint.h>
 
-#include "ceiling/fraction.h"
-#include "ceiling/overhead.h"
+#include "ceiling/path.h"
 #include "declare/circuit.h"
+#include "declare/fraction.h"
 #include "trial.h"
 
-struct error;
-
-#define BOUNDS_MAX (2 * SEGMENTS_MAX + SERVICES_MAX + 8)
+/* A segment has a line, a channel, a contract and a device. */
+#define BOUNDS_MAX (4 * SEGMENTS_MAX + 16)
 
 enum bound_class { BOUND_MEDIUM, BOUND_CONTRACT, BOUND_CONDITION };
 const char *bound_class_name(enum bound_class class);
@@ -41,19 +40,25 @@ struct exact_bound {
 	uint64_t burst_bytes;		/* of a contract, counted like it */
 };
 
-/* The medium of segment i: capacity and overhead at the circuit's MTU. */
-int bound_medium(const struct circuit *circuit, size_t i,
-    enum direction direction, const struct overhead *overhead,
-    struct exact_bound *out, struct error *err);
+/* The line of segment i under the load. */
+void bound_medium(const struct circuit *circuit, size_t i,
+    const struct path_segment *segment, struct exact_bound *out);
+/* Its channel's capacity by Shannon; false: it is not known. */
+bool bound_channel(const struct circuit *circuit, size_t i,
+    const struct path_segment *segment, struct exact_bound *out);
 /* The contract of segment i; false: it states no rate in this direction. */
 bool bound_segment_contract(const struct circuit *circuit, size_t i,
-    enum direction direction, const struct overhead *overhead,
+    enum direction direction, const struct path_segment *segment,
     struct exact_bound *out);
 /* The circuit's own services added up.  False: there are none, or one states
- * no rate in this direction and so may use what the line leaves.  `overhead`
- * is that of segment i, where the traffic enters and is metered. */
+ * no rate in this direction and so may use what the line leaves.  Segment i
+ * is where the traffic enters and is metered. */
 bool bound_circuit_contract(const struct circuit *circuit, size_t i,
-    enum direction direction, const struct overhead *overhead,
+    enum direction direction, const struct path_segment *segment,
     struct exact_bound *out);
+/* What a device at segment i forwards, in packets a second; false: none is
+ * declared. */
+bool bound_device(const struct circuit *circuit, size_t i,
+    const struct path_segment *segment, struct exact_bound *out);
 
 #endif

@@ -2,23 +2,34 @@
 #include "ceiling/capacity.h"
 
 #include <assert.h>
+#include <string.h>
 
 #include "error.h"
 
-int
-capacity_compute(const struct medium_use *use, enum direction direction,
-    struct fraction *out, struct error *err)
+struct fraction
+capacity_offered(const struct medium_capacity *capacity)
 {
-	struct medium_rate rate;
+	return capacity->steps_count == 0 ? capacity->line_bps :
+	    capacity->steps[capacity->steps_count - 1].left_bps;
+}
 
-	assert(!medium_is_reference(use->medium));
-	if (use->medium->rate(&use->parameters, direction, &rate, err) == -1)
+int
+capacity_compute(const struct medium_use *use, const struct medium_load *load,
+    struct medium_capacity *out, struct error *err)
+{
+	const struct medium *medium = use->medium;
+
+	assert(!medium_is_reference(medium));
+	memset(out, 0, offsetof(struct medium_capacity, notes));
+	out->notes_count = 0;
+	out->contention = 1;
+	out->duplex = medium->duplex;
+	out->tolerance_ppm = medium->tolerance_ppm;
+	if (medium->capacity(&use->parameters, load, out, err) == -1)
 		return -1;
-	if (rate.num_bps == 0 || rate.den == 0 ||
-	    rate.num_bps / rate.den > RATE_MAX_BPS)
+	if (fraction_floor(capacity_offered(out)) == 0 ||
+	    fraction_floor(out->line_bps) > RATE_MAX_BPS)
 		return error_set(err, ERROR_INPUT, "medium %s: its parameters "
-		    "make no rate from 1 bit/s to 1.6 Tbit/s",
-		    use->medium->name);
-	*out = fraction_make(rate.num_bps, rate.den);
+		    "make no rate from 1 bit/s to 1.6 Tbit/s", medium->name);
 	return 0;
 }

@@ -6,14 +6,13 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "ceiling/capacity.h"
 #include "error.h"
 
 /* What is worked out before it is rounded. */
 struct assembly {
 	const struct circuit *circuit;
-	enum direction direction;
-	struct overhead overheads[SEGMENTS_MAX];
+	const struct load *load;
+	struct path_segment *segments;
 	struct exact_bound binding;	/* the lowest so far */
 	size_t binding_index;		/* of it in the ceiling's bounds */
 };
@@ -33,23 +32,17 @@ entry_segment(const struct circuit *circuit, enum direction direction)
 }
 
 static int
-compute_overheads(struct assembly *a, enum protocol protocol,
-    struct error *err)
+make_segments(struct assembly *a, struct error *err)
 {
 	const struct circuit *circuit = a->circuit;
-	uint64_t mtu_bytes = circuit_mtu(circuit);
-	struct layer_stack stack;
 	size_t i;
 
-	for (i = 0; i < circuit->segments_count; i++) {
-		layers_with_protocol(&circuit->segments[i].layers, protocol,
-		    &stack);
-		if (overhead_compute(&stack, mtu_bytes, &a->overheads[i],
+	for (i = 0; i < circuit->segments_count; i++)
+		if (path_segment_make(circuit, i, a->load, &a->segments[i],
 		    err) == -1) {
 			error_wrap(err, "circuit '%s'", circuit->name);
 			return -1;
 		}
-	}
 	return 0;
 }
 
@@ -69,60 +62,68 @@ keep_bound(struct assembly *a, const struct exact_bound *bound,
 	a->binding_index = index;
 }
 
-static int
-collect_bounds(struct assembly *a, struct ceiling *out, struct error *err)
+static void
+collect_bounds(struct assembly *a, struct ceiling *out)
 {
 	const struct circuit *circuit = a->circuit;
+	enum direction direction = a->load->direction;
 	struct exact_bound bound;
-	size_t i, entry = entry_segment(circuit, a->direction);
+	size_t i, entry = entry_segment(circuit, direction);
 
 	for (i = 0; i < circuit->segments_count; i++) {
-		if (bound_medium(circuit, i, a->direction, &a->overheads[i],
-		    &bound, err) == -1)
-			return -1;
+		bound_medium(circuit, i, &a->segments[i], &bound);
 		keep_bound(a, &bound, out);
-	}
-	for (i = 0; i < circuit->segments_count; i++)
-		if (bound_segment_contract(circuit, i, a->direction,
-		    &a->overheads[i], &bound))
+		if (bound_channel(circuit, i, &a->segments[i], &bound))
 			keep_bound(a, &bound, out);
-	if (bound_circuit_contract(circuit, entry, a->direction,
-	    &a->overheads[entry], &bound))
+	}
+	for (i = 0; i < circuit->segments_count; i++) {
+		if (bound_segment_contract(circuit, i, direction,
+		    &a->segments[i], &bound))
+			keep_bound(a, &bound, out);
+		if (bound_device(circuit, i, &a->segments[i], &bound))
+			keep_bound(a, &bound, out);
+	}
+	if (bound_circuit_contract(circuit, entry, direction,
+	    &a->segments[entry], &bound))
 		keep_bound(a, &bound, out);
 	out->bounds[a->binding_index].binding = true;
-	return 0;
 }
 
 /* Octets of all levels over one denominator. */
 static void
-fill_octets(const struct overhead *overhead, struct ceiling *out)
+fill_octets(const struct path_segment *segment,
+    const struct fraction octets[LEVELS], struct ceiling *out)
 {
-	uint128 den = fractions_denominator(overhead->octets, LEVELS);
+	const struct overhead *overhead = &segment->overhead;
+	uint128 den = fractions_denominator(octets, LEVELS);
 	int level;
 
 	for (level = 0; level < LEVELS; level++) {
 		out->has_level[level] = overhead->has_level[level];
-		out->level_bytes_num[level] = fraction_floor(fraction_multiply(
-		    overhead->octets[level], fraction_make(den, 1)));
+		out->level_bytes_num[level] = octets[level].num *
+		    (den / octets[level].den);
 	}
-	out->level_bytes_den = (uint64_t)den;
+	out->level_bytes_den = den;
 	out->packet_bytes = overhead->packet_bytes;
 }
 
-static void
-add_step(struct ceiling *out, const struct overhead_part *part)
+/* A step that is of no packet and leads to a lower rate of the line. */
+static struct ladder_step *
+add_line_step(struct ceiling *out, const char *name, uint64_t bps,
+    const char *source)
 {
 	struct ladder_step *step;
 
 	assert(out->steps_count < LADDER_STEPS_MAX);
 	step = &out->steps[out->steps_count++];
-	(void)snprintf(step->name, sizeof(step->name), "%s: %s",
-	    part->layer->name, part->what);
-	step->bytes_num = (uint64_t)part->octets.num;
-	step->bytes_den = (uint64_t)part->octets.den;
-	step->reaches_level = part->reaches_level;
-	step->level = part->level;
-	step->source = part->layer->source;
+	memset(step, 0, sizeof(*step));
+	(void)snprintf(step->name, sizeof(step->name), "%s", name);
+	step->bytes_den = 1;
+	step->bps = bps;
+	step->reaches_level = true;
+	step->level = LEVEL_LINE;
+	step->source = source;
+	return step;
 }
 
 void
@@ -145,79 +146,163 @@ ladder_round(const struct ladder_step *steps, size_t count,
 	assert(begin == count);
 }
 
-/* Rate at each level, and the steps from one to the next. */
-static void
-fill_rates(const struct overhead *overhead, struct fraction payload,
-    struct ceiling *out)
+/* The steps from the line to the payload while they are exact. */
+struct packet_steps {
+	struct ladder_step *steps;
+	struct fraction octets[LADDER_STEPS_MAX];
+	size_t count;
+};
+
+static struct ladder_step *
+add_packet_step(struct packet_steps *packet, struct fraction octets,
+    const char *source)
 {
-	struct fraction rates[OVERHEAD_PARTS_MAX], levels[LEVELS];
-	struct fraction bps_an_octet;
-	struct ladder_step *steps = &out->steps[out->steps_count];
-	uint64_t bps[OVERHEAD_PARTS_MAX];
+	struct ladder_step *step = &packet->steps[packet->count];
+
+	memset(step, 0, sizeof(*step));
+	step->bytes_num = octets.num;
+	step->bytes_den = octets.den;
+	step->source = source;
+	packet->octets[packet->count++] = octets;
+	return step;
+}
+
+/* What the medium takes of its line, as octets of the packet that it carries;
+ * then what acknowledgements take. */
+static void
+add_medium_steps(const struct medium *medium,
+    const struct path_segment *segment, struct packet_steps *packet)
+{
+	const struct medium_capacity *capacity = &segment->capacity;
+	struct fraction before = capacity->line_bps, octets, an_octet;
+	struct fraction carried = path_octets_on_line(segment, LEVEL_LINE);
+	struct ladder_step *step;
 	size_t i;
 
-	bps_an_octet = fraction_divide(payload,
-	    overhead->octets[LEVEL_PAYLOAD]);
-	for (i = 0; i < LEVELS; i++) {
-		levels[i] = fraction_multiply(overhead->octets[i],
-		    bps_an_octet);
-		out->rate_bps[i] = fraction_floor(levels[i]);
-	}
-	for (i = 0; i < overhead->parts_count; i++) {
-		rates[i] = fraction_multiply(overhead->parts[i].octets,
-		    bps_an_octet);
-		add_step(out, &overhead->parts[i]);
-	}
-	ladder_round(steps, overhead->parts_count, rates, levels, bps);
-	for (i = 0; i < overhead->parts_count; i++)
-		steps[i].bps = bps[i];
-}
+	an_octet = fraction_divide(carried, capacity_offered(capacity));
+	for (i = 0; i < capacity->steps_count; i++) {
+		const struct medium_step *taken = &capacity->steps[i];
 
-/* What a contract leaves of the narrow segment's line. */
-static int
-fill_unused(struct assembly *a, const struct overhead *overhead,
-    struct ceiling *out, struct error *err)
-{
-	const struct segment *segment = &a->circuit->segments[out->narrow];
-	struct fraction line, used;
-	struct ladder_step *step;
-
-	if (capacity_compute(&segment->medium, a->direction, &line, err) == -1)
-		return -1;
-	out->line_rate_bps = fraction_floor(line);
-	used = fraction_multiply(a->binding.payload, fraction_divide(
-	    overhead->octets[LEVEL_LINE], overhead->octets[LEVEL_PAYLOAD]));
-	if (fraction_compare(used, line) == 0)
-		return 0;
-	out->unused_bps = out->line_rate_bps - fraction_floor(used);
-	step = &out->steps[out->steps_count++];
-	(void)snprintf(step->name, sizeof(step->name),
-	    "left unused by the contract");
-	step->bytes_den = 1;
-	step->bps = out->unused_bps;
-	step->reaches_level = true;
-	step->level = LEVEL_LINE;
-	step->source = "declared";
-	return 0;
+		octets = fraction_multiply(an_octet,
+		    fraction_subtract(before, taken->left_bps));
+		before = taken->left_bps;
+		if (octets.num == 0)
+			continue;
+		step = add_packet_step(packet, octets, taken->source);
+		(void)snprintf(step->name, sizeof(step->name), "%s: %s",
+		    medium->name, taken->what);
+	}
+	octets = fraction_subtract(carried,
+	    segment->overhead.octets[LEVEL_LINE]);
+	if (octets.num == 0)
+		return;
+	step = add_packet_step(packet, octets, "RFC 9293 s3.8.6.3");
+	(void)snprintf(step->name, sizeof(step->name), "acknowledgements, one "
+	    "for %.4g segments", fraction_double(fraction_divide(
+	    fraction_whole(1), segment->acks_per_packet)));
 }
 
 static void
-fill_binding(const struct assembly *a, const struct overhead *overhead,
+add_layer_steps(const struct overhead *overhead, struct packet_steps *packet)
+{
+	struct ladder_step *step;
+	size_t i;
+
+	for (i = 0; i < overhead->parts_count; i++) {
+		const struct overhead_part *part = &overhead->parts[i];
+
+		step = add_packet_step(packet, part->octets,
+		    part->layer->source);
+		(void)snprintf(step->name, sizeof(step->name), "%s: %s",
+		    part->layer->name, part->what);
+		step->reaches_level = part->reaches_level;
+		step->level = part->level;
+	}
+}
+
+/* Rate at each level, and the steps from one to the next. */
+static void
+fill_rates(const struct assembly *a, const struct path_segment *segment,
+    struct ceiling *out)
+{
+	struct fraction rates[LADDER_STEPS_MAX], levels[LEVELS];
+	struct fraction octets[LEVELS], bps_an_octet;
+	struct packet_steps packet = {
+		.steps = &out->steps[out->steps_count] };
+	uint64_t bps[LADDER_STEPS_MAX];
+	size_t i;
+
+	memcpy(octets, segment->overhead.octets, sizeof(octets));
+	octets[LEVEL_LINE] = path_line_octets(segment);
+	fill_octets(segment, octets, out);
+	bps_an_octet = fraction_divide(a->binding.payload,
+	    octets[LEVEL_PAYLOAD]);
+	for (i = 0; i < LEVELS; i++) {
+		levels[i] = fraction_multiply(octets[i], bps_an_octet);
+		out->rate_bps[i] = fraction_floor(levels[i]);
+	}
+	add_medium_steps(a->circuit->segments[out->narrow].medium.medium,
+	    segment, &packet);
+	add_layer_steps(&segment->overhead, &packet);
+	for (i = 0; i < packet.count; i++)
+		rates[i] = fraction_multiply(packet.octets[i], bps_an_octet);
+	ladder_round(packet.steps, packet.count, rates, levels, bps);
+	for (i = 0; i < packet.count; i++)
+		packet.steps[i].bps = bps[i];
+	out->steps_count += packet.count;
+}
+
+/* What others get of the narrow segment's line, and what the contract leaves
+ * of the rest. */
+static void
+fill_unused(const struct assembly *a, const struct path_segment *segment,
+    struct ceiling *out)
+{
+	const struct medium_capacity *capacity = &segment->capacity;
+	struct fraction line = capacity->line_bps, own, used;
+
+	out->line_rate_bps = fraction_floor(line);
+	own = fraction_multiply(line, segment->share);
+	out->shared_bps = out->line_rate_bps - fraction_floor(own);
+	if (out->shared_bps != 0)
+		(void)add_line_step(out, capacity->contention == 1 ?
+		    "the other direction" : "other users", out->shared_bps,
+		    "declared");
+	used = fraction_multiply(a->binding.payload, fraction_divide(
+	    path_line_octets(segment),
+	    segment->overhead.octets[LEVEL_PAYLOAD]));
+	if (fraction_compare(used, own) == 0)
+		return;
+	out->unused_bps = fraction_floor(own) - fraction_floor(used);
+	(void)add_line_step(out, a->binding.bound.class == BOUND_MEDIUM ?
+	    "beyond the channel's capacity" : "left unused by the contract",
+	    out->unused_bps, out->bounds[a->binding_index].source);
+}
+
+static void
+fill_binding(const struct assembly *a, const struct path_segment *segment,
     struct ceiling *out)
 {
 	const struct exact_bound *binding = &a->binding;
-	const struct medium *medium;
+	const struct medium_capacity *capacity = &segment->capacity;
 
-	medium = a->circuit->segments[out->narrow].medium.medium;
 	out->payload_num = binding->payload.num;
 	out->payload_den = binding->payload.den;
-	out->tolerance_ppm = medium->tolerance_ppm;
-	out->accuracy = medium->accuracy;
+	out->tolerance_ppm = capacity->tolerance_ppm;
+	out->accuracy = segment->accuracy;
+	out->shared = capacity->duplex == DUPLEX_SHARED;
+	if (segment->acks_per_packet.num != 0 && (segment->acks_on_line ||
+	    segment->acks_in_contract || capacity->counts_acks))
+		out->segments_per_ack = 1 /
+		    fraction_double(segment->acks_per_packet);
+	memcpy(out->notes, capacity->notes,
+	    capacity->notes_count * sizeof(out->notes[0]));
+	out->notes_count = capacity->notes_count;
 	out->burst_bytes = binding->burst_bytes;
 	out->binding_counted_at = binding->counted_at;
 	out->binding_counted_ratio = fraction_double(fraction_divide(
-	    overhead->octets[binding->counted_at],
-	    overhead->octets[LEVEL_PAYLOAD]));
+	    segment->overhead.octets[binding->counted_at],
+	    segment->overhead.octets[LEVEL_PAYLOAD]));
 }
 
 static void
@@ -228,51 +313,60 @@ fill_reference(const struct assembly *a, struct ceiling *out)
 	out->payload_den = 1;
 	out->binding_counted_at = LEVEL_PAYLOAD;
 	out->binding_counted_ratio = 1.0;
-	fill_octets(&a->overheads[0], out);
+	fill_octets(&a->segments[0], a->segments[0].overhead.octets, out);
 }
 
-static int
-assemble(struct assembly *a, enum protocol protocol, struct ceiling *out,
-    struct error *err)
+static void
+assemble(struct assembly *a, struct ceiling *out)
 {
-	const struct overhead *overhead;
+	const struct path_segment *segment;
+	struct layer_stack stack;
 
 	memset(out, 0, sizeof(*out));
-	out->direction = a->direction;
-	out->protocol = protocol;
+	out->direction = a->load->direction;
+	out->both = a->load->both;
+	path_stack(a->circuit, 0, a->load, &stack);
+	out->protocol = layers_protocol(&stack);
+	(void)layers_top_text(&stack, out->top, sizeof(out->top));
 	if (circuit_is_reference(a->circuit)) {
 		fill_reference(a, out);
-		return 0;
+		return;
 	}
-	if (collect_bounds(a, out, err) == -1)
-		return -1;
+	collect_bounds(a, out);
 	out->narrow = a->binding.segment;
-	overhead = &a->overheads[out->narrow];
-	fill_octets(overhead, out);
-	fill_binding(a, overhead, out);
-	if (fill_unused(a, overhead, out, err) == -1)
-		return -1;
-	fill_rates(overhead, a->binding.payload, out);
-	return 0;
+	segment = &a->segments[out->narrow];
+	fill_binding(a, segment, out);
+	fill_unused(a, segment, out);
+	fill_rates(a, segment, out);
+}
+
+int
+ceiling_of_load(const struct circuit *circuit, const struct load *load,
+    struct ceiling *out, struct error *err)
+{
+	struct assembly a = { .circuit = circuit, .load = load };
+	int rc = -1;
+
+	assert(load->direction < DIRECTIONS_SINGLE);
+	a.segments = malloc(circuit->segments_count * sizeof(*a.segments));
+	if (a.segments == NULL)
+		return error_errno(err, ERROR_INTERNAL, "ceiling");
+	if (make_segments(&a, err) == 0) {
+		assemble(&a, out);
+		rc = 0;
+	}
+	free(a.segments);
+	return rc;
 }
 
 int
 ceiling_compute(const struct circuit *circuit, enum direction direction,
     enum protocol protocol, struct ceiling *out, struct error *err)
 {
-	struct assembly *a;
-	int rc = -1;
+	const struct load load = { .direction = direction,
+		.protocol = protocol };
 
-	assert(direction < DIRECTIONS_SINGLE);
-	a = calloc(1, sizeof(*a));
-	if (a == NULL)
-		return error_errno(err, ERROR_INTERNAL, "ceiling");
-	a->circuit = circuit;
-	a->direction = direction;
-	if (compute_overheads(a, protocol, err) == 0)
-		rc = assemble(a, protocol, out, err);
-	free(a);
-	return rc;
+	return ceiling_of_load(circuit, &load, out, err);
 }
 
 int

@@ -13,21 +13,23 @@
 #include <stdint.h>
 
 #include "ceiling/bound.h"
-#include "ceiling/overhead.h"
+#include "ceiling/path.h"
 #include "declare/circuit.h"
 #include "trial.h"
 #include "units.h"
 
 struct error;
 
-#define LADDER_STEPS_MAX (OVERHEAD_PARTS_MAX + 1)
+/* Contention, the other direction, the contract; the medium's own; the
+ * acknowledgements; then the layers'. */
+#define LADDER_STEPS_MAX (OVERHEAD_PARTS_MAX + MEDIUM_STEPS_MAX + 4)
 
 /* One line of the ladder: what is taken off, and where that leads.  The octets
  * of the steps and of the payload add up to those of the line; the rates of
  * the steps between two levels to the difference of their rates. */
 struct ladder_step {
 	char name[64];		/* "ethernet: preamble, SFD, gap" */
-	uint64_t bytes_num, bytes_den;	/* octets a packet; 0/1 if unused */
+	uint128 bytes_num, bytes_den;	/* octets a packet; 0/1: of none */
 	uint64_t bps;		/* apportioned: the column adds up */
 	bool reaches_level;	/* after this step we are at `level` */
 	enum layer_level level;
@@ -36,15 +38,22 @@ struct ladder_step {
 
 struct ceiling {
 	enum direction direction;	/* single */
-	enum protocol protocol;
+	enum protocol protocol;		/* the nearest, of a declared stack */
+	char top[64];			/* "tcp+tls": what is above IP */
+	bool both;			/* the other direction has its load */
+	bool shared;			/* both share the narrow line */
+	/* Segments that one acknowledgement answers, where they lower it; else
+	 * 0. */
+	double segments_per_ack;
 	bool reference;			/* medium host: no rates below */
 	bool has_level[LEVELS];		/* a medium without frames has none */
 	uint64_t rate_bps[LEVELS];	/* rounded down; 0 without the level */
 	uint128 payload_num, payload_den;	/* exact payload rate */
-	uint64_t level_bytes_num[LEVELS];	/* octets a packet, there */
-	uint64_t level_bytes_den;
+	uint128 level_bytes_num[LEVELS];	/* octets a packet, there */
+	uint128 level_bytes_den;
 	uint64_t packet_bytes;		/* L, the lowest IP layer's packet */
 	uint64_t line_rate_bps;		/* of the narrow segment's medium */
+	uint64_t shared_bps;		/* line rate that others get */
 	uint64_t unused_bps;		/* line rate that the contract leaves */
 	struct bound bounds[BOUNDS_MAX];
 	size_t bounds_count;
@@ -52,7 +61,9 @@ struct ceiling {
 	size_t steps_count;
 	size_t narrow;			/* segment of the binding bound */
 	uint64_t tolerance_ppm;		/* of the narrow medium's clock */
-	enum medium_accuracy accuracy;
+	enum accuracy accuracy;		/* of the narrow segment */
+	char notes[MEDIUM_NOTES_MAX][MEDIUM_NOTE_SIZE];	/* on its medium */
+	size_t notes_count;
 	uint64_t burst_bytes;		/* of the binding contract, or 0 */
 	/* Level at which the binding contract is counted, and the rate there
 	 * divided by the payload rate; payload and 1 where a medium binds. */
@@ -60,9 +71,13 @@ struct ceiling {
 	double binding_counted_ratio;
 };
 
-/* Ceiling of one direction for a transport (the declared stack's transport and
- * what lies above it are replaced by `protocol`).  Borrows circuit.
- * -1 (ERROR_INPUT): the layers do not fit into the MTU. */
+/* Ceiling of one direction under a load.  Borrows circuit.
+ * -1 (ERROR_INPUT): the layers do not fit into the MTU, or a medium's
+ * parameters make no rate. */
+int ceiling_of_load(const struct circuit *circuit, const struct load *load,
+    struct ceiling *out, struct error *err);
+/* The same for a transport alone on the circuit: the declared stack's transport
+ * and what lies above it are replaced by `protocol`. */
 int ceiling_compute(const struct circuit *circuit, enum direction direction,
     enum protocol protocol, struct ceiling *out, struct error *err);
 /* The protocol that the declared stack ends in. */

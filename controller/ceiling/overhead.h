@@ -12,7 +12,7 @@
 #include <stddef.h>
 #include <stdint.h>
 
-#include "ceiling/fraction.h"
+#include "declare/fraction.h"
 #include "declare/stack.h"
 
 struct error;
@@ -32,15 +32,24 @@ struct overhead_part {
 struct overhead {
 	bool has_level[LEVELS];
 	struct fraction octets[LEVELS];	/* a packet; 0 without the level */
+	/* Of a segment without payload, which acknowledges; LINE to SEGMENT.
+	 * All 0 where the transport sends none. */
+	struct fraction ack_octets[LEVELS];
 	struct overhead_part parts[OVERHEAD_PARTS_MAX];	/* from the line up */
 	size_t parts_count;
 	uint64_t packet_bytes;		/* of the lowest IP layer */
 };
 
-/* Octets of the largest packet that fits into mtu_bytes.  The parts and the
- * payload add up to the line.
+/* Octets of the largest packet that fits into mtu_bytes; upstream: away from a
+ * subscriber, where some layers cost less.  The parts and the payload add up
+ * to the line.
  * -1 (ERROR_INPUT): the layers leave no room for payload. */
 int overhead_compute(const struct layer_stack *stack, uint64_t mtu_bytes,
-    struct overhead *out, struct error *err);
+    bool upstream, struct overhead *out, struct error *err);
+/* Octets at LINE, FRAME, FRAME_WITHOUT_FCS and PACKET of a packet of the lowest
+ * IP layer, whatever it carries; the other levels and those that the stack
+ * does not have are 0. */
+void overhead_of_packet(const struct layer_stack *stack, uint64_t packet_bytes,
+    bool upstream, struct fraction octets[LEVELS]);
 
 #endif

@@ -124,8 +124,8 @@ fit_to_path(const struct circuit *circuit, const struct ceiling *ceiling,
 		trial->streams = streams;
 	ramp_ns = plan_ramp_ns(payload_bps, facts->round_trip_ns,
 	    ceiling->level_bytes_den == 0 ? 0 :
-	    ceiling->level_bytes_num[LEVEL_PAYLOAD] /
-	    ceiling->level_bytes_den);
+	    (uint64_t)(ceiling->level_bytes_num[LEVEL_PAYLOAD] /
+	    ceiling->level_bytes_den));
 	settle_ns = plan_settle_ns(declared->settle_ns, ramp_ns,
 	    facts->round_trip_ns, ceiling->burst_bytes,
 	    ceiling->line_rate_bps, contract_bps(ceiling), trial->row_ns);

@@ -2,6 +2,7 @@
 #include "declare/circuit.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -58,7 +59,8 @@ service_has_rate(const struct service *service, enum direction direction)
 static int
 check_forms(const struct node *root, struct error *err)
 {
-	const char *const short_only[] = { "medium", "mtu", "service" };
+	const char *const short_only[] = { "medium", "mtu", "device",
+		"service" };
 	const struct node *node;
 	size_t i;
 
@@ -86,6 +88,23 @@ check_forms(const struct node *root, struct error *err)
 	return 0;
 }
 
+static int
+refuse_lowest(const struct medium *medium, const struct layer_use *lowest,
+    struct error *err)
+{
+	char allowed[256] = "";
+	size_t i, used = 0;
+
+	for (i = 0; medium->carries[i] != NULL; i++) {
+		(void)snprintf(allowed + used, sizeof(allowed) - used, "%s%s",
+		    i == 0 ? "" : medium->carries[i + 1] == NULL ? " or " :
+		    ", ", medium->carries[i]);
+		used += strlen(allowed + used);
+	}
+	return node_error(lowest->at, err, "layers: found %s on medium %s, "
+	    "allowed there: %s", lowest->layer->name, medium->name, allowed);
+}
+
 /* Medium and layers must be there and go together. */
 static int
 settle_segment(struct segment *segment, const struct layer_stack *inherited,
@@ -105,11 +124,9 @@ settle_segment(struct segment *segment, const struct layer_stack *inherited,
 		    "list, lowest first, such as [ ethernet, ipv4, tcp ]");
 	lowest = &segment->layers.use[0];
 	if (!medium_carries(medium, lowest->layer->name))
-		return node_error(lowest->at, err, "layers: found %s on medium "
-		    "%s, allowed there: %s%s%s", lowest->layer->name,
-		    medium->name, medium->carries[0],
-		    medium->carries[1] != NULL ? " or " : "",
-		    medium->carries[1] != NULL ? medium->carries[1] : "");
+		return refuse_lowest(medium, lowest, err);
+	if (medium->bare_frames)
+		layers_settle_bare(&segment->layers);
 	if (segment->mtu_bytes == FIELD_UNSET)
 		segment->mtu_bytes = layers_default_mtu(&segment->layers);
 	if (segment->mtu_bytes == 0)

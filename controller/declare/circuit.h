@@ -62,6 +62,12 @@ struct criteria {
 	uint64_t delay_variation_ns[DIRECTIONS_SINGLE];
 };
 
+/* A box on the way that forwards so many packets and no more. */
+struct device {
+	char name[CIRCUIT_NAME_SIZE];
+	uint64_t packets_per_s;		/* each direction; FIELD_UNSET */
+};
+
 struct shared_circuit {
 	char name[CIRCUIT_NAME_SIZE];
 };
@@ -72,6 +78,7 @@ struct segment {
 	struct layer_stack layers;
 	uint64_t mtu_bytes;		/* resolved, never unset */
 	struct service service;		/* its own contract, or all unset */
+	struct device device;
 	struct shared_circuit shared_with[SHARED_MAX];	/* other circuits */
 	size_t shared_with_count;
 	uint64_t exclusive;		/* 1: carries no other; FIELD_UNSET */

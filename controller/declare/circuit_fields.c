@@ -111,6 +111,23 @@ const struct field service_fields[] = {
 	{ .name = NULL },
 };
 
+/* Beyond what 1.6 Tbit/s can carry of frames of 64 octets. */
+#define PACKETS_PER_S_MAX UINT64_C(10000000000)
+
+static const struct field device_fields[] = {
+	{ ROW_TEXT(struct device, "name", name), .help = "its name" },
+	{ ROW(struct device, "packets-per-second", FIELD_COUNT,
+	  packets_per_s), .min = 1, .max = PACKETS_PER_S_MAX,
+	  .required = true,
+	  .help = "packets that it forwards in each direction" },
+	{ .name = NULL },
+};
+
+#define DEVICE_ROW(type, member)					\
+	{ ROW(type, "device", FIELD_MAPPING, member),			\
+	  .fields = device_fields,					\
+	  .help = "a box on the way that limits packets, not bits" }
+
 #define MTU_MAX_BYTES 65536	/* IPv4's and IPv6's length fields, loopback */
 #define MTU_ROW(type, member)						\
 	{ ROW_QUANTITY(type, "mtu", SIZE, member), .min = 1,		\
@@ -130,6 +147,7 @@ static const struct field segment_fields[] = {
 	MTU_ROW(struct segment, mtu_bytes),
 	{ ROW(struct segment, "service", FIELD_MAPPING, service),
 	  .fields = service_fields, .help = "a contract of this segment" },
+	DEVICE_ROW(struct segment, device),
 	{ ROW(struct segment, "shared-with", FIELD_CUSTOM, shared_with),
 	  .read = shared_read, .help = "list of other circuits it carries" },
 	{ ROW(struct segment, "exclusive", FIELD_YES_NO, exclusive),
@@ -216,6 +234,7 @@ const struct field circuit_fields[] = {
 	  .read = layers_read, .help = "list of layers, lowest first: see "
 	      "`plafond layers`" },
 	MTU_ROW(struct draft, short_form.mtu_bytes),
+	DEVICE_ROW(struct draft, short_form.device),
 	{ ROW(struct draft, "service", FIELD_MAPPING, service),
 	  .fields = service_fields, .help = "the contract" },
 	{ ROW(struct draft, "services", FIELD_LIST, circuit.services),

@@ -14,6 +14,7 @@ static const char *const level_names[LEVELS] = {
 	[LEVEL_SEGMENT] = "segment",
 	[LEVEL_PAYLOAD] = "payload",
 };
+static const char tunnel_name[] = "tunnel";
 
 const struct choice level_choices[] = {
 	{ "line", LEVEL_LINE },
@@ -83,6 +84,11 @@ static const struct field tcp_fields[] = {
 	  .offset = offsetof(struct layer_options, options_bytes),
 	  .max = HEADER_OPTIONS_MAX_BYTES, .default_text = "0 B",
 	  .help = "further options in every segment, a multiple of 4 B" },
+	{ .name = "segments-per-acknowledgement", .kind = FIELD_COUNT,
+	  .offset = offsetof(struct layer_options, segments_per_ack),
+	  .min = 1, .max = 1000, .default_text = "2",
+	  .help = "segments that one acknowledgement answers (RFC 9293 "
+		  "section 3.8.6.3); more with receive offload" },
 	{ .name = NULL },
 };
 static const struct field tls_fields[] = {
@@ -215,6 +221,7 @@ const struct layer layer_table[] = {
 		.name = "tcp",
 		.title = "Transmission Control Protocol",
 		.level = LEVEL_SEGMENT,
+		.acknowledged = true,
 		.below = NAMES("ipv4", "ipv6"),
 		.cost = { .head_bytes = 20, .align_bytes = 1, .num = 1,
 		    .den = 1 },
@@ -265,8 +272,8 @@ static const char *const layers_of_protocol[PROTOCOLS][3] = {
 const char *
 level_name(enum layer_level level)
 {
-	assert(level < LEVELS);
-	return level_names[level];
+	assert(level <= LEVEL_TUNNEL);
+	return level == LEVEL_TUNNEL ? tunnel_name : level_names[level];
 }
 
 const struct layer *
@@ -276,6 +283,28 @@ layer_find(const char *name)
 
 	for (layer = layer_table; layer->name != NULL; layer++)
 		if (strcmp(layer->name, name) == 0)
+			return layer;
+	return NULL;
+}
+
+static bool
+lies_on(const struct layer *layer, const char *below)
+{
+	const char *const *name;
+
+	for (name = layer->below; *name != NULL; name++)
+		if (strcmp(*name, below) == 0)
+			return true;
+	return false;
+}
+
+const struct layer *
+layer_find_on(const char *name, const char *below)
+{
+	const struct layer *layer;
+
+	for (layer = layer_table; layer->name != NULL; layer++)
+		if (strcmp(layer->name, name) == 0 && lies_on(layer, below))
 			return layer;
 	return NULL;
 }

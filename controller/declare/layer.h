@@ -13,6 +13,7 @@
 #include <stddef.h>
 #include <stdint.h>
 
+#include "declare/accuracy.h"
 #include "field.h"
 #include "trial.h"
 
@@ -26,9 +27,11 @@ enum layer_level {
 	LEVEL_PACKET,		/* L3 */
 	LEVEL_SEGMENT,		/* L4 with its header */
 	LEVEL_PAYLOAD,		/* what the application hands over */
-	LEVELS
+	LEVELS,
+	LEVEL_TUNNEL = LEVELS	/* of a row only: nothing is counted there */
 };
-const char *level_name(enum layer_level level);	/* "line", "frame", ... */
+/* "line", "frame", ..., "tunnel" */
+const char *level_name(enum layer_level level);
 extern const struct choice level_choices[];	/* for counted-at */
 
 /* Options that a declaration can give to a layer; each row's fields point into
@@ -36,6 +39,7 @@ extern const struct choice level_choices[];	/* for counted-at */
 struct layer_options {
 	uint64_t timestamps;		/* tcp: 0 or 1 */
 	uint64_t options_bytes;		/* ipv4, tcp: further header options */
+	uint64_t segments_per_ack;	/* tcp */
 	uint64_t version;		/* tls: 12, 13 */
 	uint64_t cipher;		/* tls: row of the cipher's overhead */
 	uint64_t record_bytes;		/* tls: plaintext a record */
@@ -43,7 +47,8 @@ struct layer_options {
 
 /* len = head + roundup(len + trail, align) + tail; at least min; plus before
  * and gap; times num/den.  With record_bytes the octets are those around one
- * record of that many carried octets, whatever the packets are. */
+ * record of that many carried octets, whatever the packets are.  What is
+ * carried together with its padding is at most limit_bytes. */
 struct layer_cost {
 	uint64_t before_bytes;		/* preamble and SFD */
 	uint64_t head_bytes;
@@ -54,18 +59,25 @@ struct layer_cost {
 	uint64_t gap_bytes;
 	uint64_t num, den;
 	uint64_t record_bytes;		/* 0: the layer counts a packet */
+	uint64_t limit_bytes;		/* 0: none but the MTU's */
+	uint64_t upstream_less_bytes;	/* of head, away from a subscriber */
 };
 
 struct layer {
 	const char *name;		/* "ethernet"; NULL ends the table */
 	const char *title;		/* "Ethernet II" */
 	/* PACKET: IP; SEGMENT: a transport; PAYLOAD: above it; FRAME: with a
-	 * header of its own below IP; LINE: below frames (cells, coding). */
+	 * header of its own below IP; LINE: below frames (cells, coding);
+	 * TUNNEL: none of these. */
 	enum layer_level level;
-	const char *const *below;	/* names; "": a medium */
+	/* Names; "": a medium with its own gap between frames, "bare": one
+	 * without.  Several rows may have one name and differ by what lies
+	 * below; no two of them by the same. */
+	const char *const *below;
 	uint64_t default_mtu_bytes;	/* what it lets through; 0: no say */
 	uint64_t min_mtu_bytes;		/* an IP layer's least MTU, else 0 */
 	unsigned ip_version;		/* 4, 6, or 0 */
+	bool acknowledged;		/* bare headers come back */
 	struct layer_cost cost;		/* without options */
 	/* Adds what the options cost; NULL where there are none.  -1: the
 	 * options do not go together. */
@@ -77,10 +89,15 @@ struct layer {
 	const char *inside, *inside_with_options, *around, *coding;
 	const char *formula;		/* for `plafond layers` */
 	const char *source;		/* short: it stands in a column */
+	enum accuracy accuracy;
+	const char *memory;		/* what rests on memory; NULL: nothing.
+					 * Such a row is never exact */
 };
 
 extern const struct layer layer_table[];	/* ends with name NULL */
-const struct layer *layer_find(const char *name);
+const struct layer *layer_find(const char *name);	/* the first */
+/* The row of that name that lies on `below`; NULL: none. */
+const struct layer *layer_find_on(const char *name, const char *below);
 
 /* Names of the layers that a trial of this protocol puts on top of IP, lowest
  * first, NULL at the end. */

@@ -2,111 +2,47 @@
 #include "declare/medium.h"
 
 #include <assert.h>
+#include <math.h>
+#include <stdarg.h>
 #include <stdio.h>
 #include <string.h>
 
+#include "declare/medium_rows.h"
 #include "error.h"
 #include "log.h"
 
-static const char *const accuracy_names[] = {
-	[ACCURACY_EXACT] = "exact",
-	[ACCURACY_NOMINAL] = "nominal",
-	[ACCURACY_MODEL] = "model",
-	[ACCURACY_REFERENCE] = "reference",
+const struct medium *const media[] = {
+	MEDIUM_ROWS
+	NULL
+};
+#define MEDIA_COUNT (sizeof(media) / sizeof(media[0]) - 1)
+
+static const char *const duplex_names[] = {
+	[DUPLEX_FULL] = "full",
+	[DUPLEX_SHARED] = "shared",
 };
 
-/* medium_read has looked at the kind before it knew the table. */
-static int
-kind_read(const struct node *node, const struct field *field, void *base,
-    struct error *err)
-{
-	(void)node;
-	(void)field;
-	(void)base;
-	(void)err;
-	return 0;
-}
-
-#define KIND_ROW							\
-	{ .name = "kind", .kind = FIELD_CUSTOM, .read = kind_read,	\
-	  .help = "name of the medium" }
-
-static const struct field ethernet_fields[] = {
-	KIND_ROW,
-	{ .name = "line-rate", .kind = FIELD_QUANTITY,
-	  .dimension = DIMENSION_RATE,
-	  .offset = offsetof(struct medium_parameters, line_rate_bps),
-	  .min = 1, .max = RATE_MAX_BPS, .required = true,
-	  .per_direction = true,
-	  .help = "the MAC rate that names the interface, e.g. 1 Gbit/s" },
-	{ .name = NULL },
+const struct choice medium_ends[] = {
+	{ "a", END_A },
+	{ "b", END_B },
+	{ NULL, 0 },
 };
-static const struct field host_fields[] = {
-	KIND_ROW,
-	{ .name = NULL },
-};
-
-/* The name of an Ethernet rate is the MAC rate: line code and FEC are paid for
- * by a higher symbol rate and are never taken off (IEEE 802.3). */
-static int
-ethernet_rate(const struct medium_parameters *parameters,
-    enum direction direction, struct medium_rate *out, struct error *err)
-{
-	(void)err;
-	out->num_bps = parameters->line_rate_bps[direction];
-	out->den = 1;
-	return 0;
-}
-
-#define NAMES(...) (const char *const[]){ __VA_ARGS__, NULL }
-
-const struct medium medium_table[] = {
-	{
-		.name = "ethernet",
-		.title = "Ethernet, full duplex, 10 Mbit/s to 400 Gbit/s",
-		.fields = ethernet_fields,
-		.rate = ethernet_rate,
-		.carries = NAMES("ethernet"),
-		.tolerance_ppm = 100,	/* RFC 5180 appendix A.1 */
-		.accuracy = ACCURACY_EXACT,
-		.accuracy_note = "the clocks of two interfaces may differ: "
-		    "each within 100 ppm of the name (RFC 5180 A.1)",
-		.formula = "line = line-rate; line code and FEC are already "
-		    "paid for by the symbol rate",
-		.source = "IEEE 802.3",
-	},
-	{
-		.name = "host",
-		.title = "inside one machine: a reference, never a ceiling",
-		.fields = host_fields,
-		.carries = NAMES("ipv4", "ipv6"),
-		/* MTU of Linux's loopback interface, drivers/net/loopback.c */
-		.default_mtu_bytes = 65536,
-		.accuracy = ACCURACY_REFERENCE,
-		.accuracy_note = "shows what the machine can do; no rate is "
-		    "expected of it",
-		.formula = "none",
-		.source = "measured",
-	},
-	{ .name = NULL },
-};
-#define MEDIA_COUNT (sizeof(medium_table) / sizeof(medium_table[0]) - 1)
 
 const char *
-accuracy_name(enum medium_accuracy accuracy)
+duplex_name(enum duplex duplex)
 {
-	assert(accuracy <= ACCURACY_REFERENCE);
-	return accuracy_names[accuracy];
+	assert(duplex <= DUPLEX_SHARED);
+	return duplex_names[duplex];
 }
 
 const struct medium *
 medium_find(const char *name)
 {
-	const struct medium *medium;
+	size_t i;
 
-	for (medium = medium_table; medium->name != NULL; medium++)
-		if (strcmp(medium->name, name) == 0)
-			return medium;
+	for (i = 0; i < MEDIA_COUNT; i++)
+		if (strcmp(media[i]->name, name) == 0)
+			return media[i];
 	return NULL;
 }
 
@@ -124,7 +60,7 @@ medium_carries(const struct medium *medium, const char *layer_name)
 bool
 medium_is_reference(const struct medium *medium)
 {
-	return medium->rate == NULL;
+	return medium->capacity == NULL;
 }
 
 static int
@@ -135,7 +71,7 @@ unknown_medium(const struct node *node, const char *name, struct error *err)
 	size_t i, used = 0;
 
 	for (i = 0; i < MEDIA_COUNT; i++) {
-		names[i] = medium_table[i].name;
+		names[i] = media[i]->name;
 		(void)snprintf(allowed + used, sizeof(allowed) - used, "%s%s",
 		    i == 0 ? "" : ", ", names[i]);
 		used += strlen(allowed + used);
@@ -174,6 +110,86 @@ medium_read(const struct node *node, const struct field *field, void *base,
 	use->medium = medium_find(kind->text);
 	if (use->medium == NULL)
 		return unknown_medium(kind, kind->text, err);
-	return fields_read(kind == node ? &none : node, use->medium->fields,
-	    kind->text, &use->parameters, err);
+	if (kind == node)
+		node = &none;
+	if (fields_read(node, use->medium->fields, kind->text,
+	    &use->parameters, err) == -1)
+		return -1;
+	if (use->medium->check == NULL)
+		return 0;
+	return use->medium->check(&use->parameters, node, err);
+}
+
+const struct node *
+medium_place(const struct node *node, const char *key)
+{
+	const struct node *child = node_child(node, key);
+
+	return child != NULL ? child : node;
+}
+
+int
+medium_kind_read(const struct node *node, const struct field *field,
+    void *base, struct error *err)
+{
+	(void)node;
+	(void)field;
+	(void)base;
+	(void)err;
+	return 0;
+}
+
+bool
+medium_is_upstream(uint64_t subscriber, enum direction direction)
+{
+	return direction_sender(direction) == (enum end)subscriber;
+}
+
+bool
+medium_upstream(const struct medium_use *use, enum direction direction)
+{
+	uint64_t subscriber;
+
+	if (use->medium->subscriber_offset == 0)
+		return false;
+	memcpy(&subscriber, use->parameters.bytes +
+	    use->medium->subscriber_offset, sizeof(subscriber));
+	return medium_is_upstream(subscriber, direction);
+}
+
+void
+medium_add_step(struct medium_capacity *out, const char *what,
+    struct fraction left_bps, const char *source)
+{
+	struct medium_step *step;
+
+	assert(out->steps_count < MEDIUM_STEPS_MAX);
+	assert(fraction_compare(left_bps, out->steps_count == 0 ?
+	    out->line_bps : out->steps[out->steps_count - 1].left_bps) <= 0);
+	step = &out->steps[out->steps_count++];
+	step->what = what;
+	step->left_bps = left_bps;
+	step->source = source;
+}
+
+void
+medium_add_note(struct medium_capacity *out, const char *fmt, ...)
+{
+	va_list ap;
+
+	assert(out->notes_count < MEDIUM_NOTES_MAX);
+	va_start(ap, fmt);
+	(void)vsnprintf(out->notes[out->notes_count++], MEDIUM_NOTE_SIZE, fmt,
+	    ap);
+	va_end(ap);
+}
+
+struct fraction
+medium_whole_bps(double bps)
+{
+	if (isnan(bps) || bps < 0)
+		return fraction_whole(0);
+	if (bps > (double)RATE_MAX_BPS)
+		return fraction_whole(RATE_MAX_BPS + 1);
+	return fraction_whole((uint64_t)bps);
 }

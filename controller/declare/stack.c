@@ -92,11 +92,7 @@ static bool
 options_equal(const struct layer_options *left,
     const struct layer_options *right)
 {
-	return left->timestamps == right->timestamps &&
-	    left->options_bytes == right->options_bytes &&
-	    left->version == right->version &&
-	    left->cipher == right->cipher &&
-	    left->record_bytes == right->record_bytes;
+	return memcmp(left, right, sizeof(*left)) == 0;
 }
 
 bool
@@ -115,8 +111,8 @@ layers_agree_above_frame(const struct layer_stack *left,
 	return true;
 }
 
-enum protocol
-layers_protocol(const struct layer_stack *stack)
+bool
+layers_ends_in_protocol(const struct layer_stack *stack, enum protocol *out)
 {
 	size_t transport = layers_transport(stack), i, matched, longest = 0;
 	enum protocol protocol, best = PROTOCOL_TCP;
@@ -135,7 +131,42 @@ layers_protocol(const struct layer_stack *stack)
 			best = protocol;
 		}
 	}
-	return best;
+	*out = best;
+	return longest == stack->count - transport;
+}
+
+enum protocol
+layers_protocol(const struct layer_stack *stack)
+{
+	enum protocol protocol;
+
+	(void)layers_ends_in_protocol(stack, &protocol);
+	return protocol;
+}
+
+enum accuracy
+layers_accuracy(const struct layer_stack *stack)
+{
+	enum accuracy worst = ACCURACY_EXACT;
+
+	for (size_t i = 0; i < stack->count; i++)
+		if (stack->use[i].layer->accuracy > worst)
+			worst = stack->use[i].layer->accuracy;
+	return worst;
+}
+
+const char *
+layers_top_text(const struct layer_stack *stack, char *buf, size_t size)
+{
+	size_t i, used = 0;
+
+	buf[0] = '\0';
+	for (i = layers_transport(stack); i < stack->count; i++) {
+		(void)snprintf(buf + used, size - used, "%s%s",
+		    used == 0 ? "" : "+", stack->use[i].layer->name);
+		used += strlen(buf + used);
+	}
+	return buf;
 }
 
 const char *
@@ -160,6 +191,22 @@ use_adjust(struct layer_use *use, struct error *err)
 	if (use->layer->adjust == NULL)
 		return 0;
 	return use->layer->adjust(&use->options, &use->cost, err);
+}
+
+void
+layers_settle_bare(struct layer_stack *stack)
+{
+	struct layer_use *use = &stack->use[0];
+	const struct layer *bare = layer_find_on(use->layer->name, "bare");
+	struct error err;
+	int rc;
+
+	if (bare == NULL || bare == use->layer)
+		return;
+	use->layer = bare;
+	rc = use_adjust(use, &err);
+	assert(rc == 0);
+	(void)rc;
 }
 
 static void
@@ -216,34 +263,42 @@ append_names(char *buf, size_t size, const char *const names[])
 }
 
 static int
-check_below(const struct layer_stack *stack, const struct layer *layer,
-    const struct node *node, struct error *err)
+find_on(const struct layer_stack *stack, const char *name,
+    const struct node *node, const struct layer **out, struct error *err)
 {
-	const char *found = "", *const *below;
-	char allowed[256] = "";
+	const char *found = "", *below[NAMES_MAX] = { NULL };
+	const struct layer *layer;
+	char allowed[512] = "";
+	size_t count = 0, i;
 
 	if (stack->count > 0)
 		found = stack->use[stack->count - 1].layer->name;
-	for (below = layer->below; *below != NULL; below++)
-		if (strcmp(*below, found) == 0)
-			return 0;
-	append_names(allowed, sizeof(allowed), layer->below);
+	*out = layer_find_on(name, found);
+	if (*out != NULL)
+		return 0;
+	for (layer = layer_table; layer->name != NULL; layer++)
+		for (i = 0; strcmp(layer->name, name) == 0 &&
+		    layer->below[i] != NULL; i++)
+			if (strcmp(layer->below[i], "bare") != 0 &&
+			    count < NAMES_MAX - 1)
+				below[count++] = layer->below[i];
+	append_names(allowed, sizeof(allowed), below);
 	return node_error(node, err, "layers: found %s on %s; %s lies on %s",
-	    layer->name, found[0] == '\0' ? "the medium" : found, layer->name,
-	    allowed);
+	    name, found[0] == '\0' ? "the medium" : found, name, allowed);
 }
 
 static int
 unknown_layer(const struct node *node, const char *name, struct error *err)
 {
 	const char *names[NAMES_MAX], *nearest;
-	char allowed[400] = "", found[64];
+	const struct layer *layer;
+	char allowed[800] = "", found[64];
 	size_t count = 0;
 
-	while (count < NAMES_MAX - 1 && layer_table[count].name != NULL) {
-		names[count] = layer_table[count].name;
-		count++;
-	}
+	for (layer = layer_table; layer->name != NULL &&
+	    count < NAMES_MAX - 1; layer++)
+		if (layer_find(layer->name) == layer)
+			names[count++] = layer->name;
 	names[count] = NULL;
 	nearest = nearest_name(name, names, count);
 	append_names(allowed, sizeof(allowed), names);
@@ -276,10 +331,9 @@ read_use(const struct node *item, struct layer_stack *stack,
 		return node_error(item, err, "layers: allowed: a name, or "
 		    "{ name: { option: value } }");
 	}
-	layer = layer_find(name);
-	if (layer == NULL)
+	if (layer_find(name) == NULL)
 		return unknown_layer(item, name, err);
-	if (check_below(stack, layer, item, err) == -1)
+	if (find_on(stack, name, item, &layer, err) == -1)
 		return -1;
 	if (options != NULL && layer->fields == NULL)
 		return node_error(options, err, "layers: %s has no options",
@@ -296,7 +350,8 @@ read_use(const struct node *item, struct layer_stack *stack,
 	return 0;
 }
 
-/* A trial needs a packet to fill and a transport to fill it. */
+/* A trial needs a packet to fill and a transport to fill it: what lies above
+ * the uppermost transport takes from its payload and is no tunnel. */
 static int
 check_top(const struct layer_stack *stack, const struct node *node,
     struct error *err)
@@ -304,19 +359,21 @@ check_top(const struct layer_stack *stack, const struct node *node,
 	const char *names[NAMES_MAX];
 	const struct layer *layer;
 	char allowed[256] = "";
-	size_t count = 0, i;
+	size_t count = 0, i = stack->count;
 
-	for (i = 0; i < stack->count; i++)
-		if (stack->use[i].layer->level == LEVEL_SEGMENT)
-			return 0;
+	while (i > 0 && stack->use[i - 1].layer->level == LEVEL_PAYLOAD)
+		i--;
+	if (i > 0 && stack->use[i - 1].layer->level == LEVEL_SEGMENT)
+		return 0;
 	for (layer = layer_table; layer->name != NULL &&
 	    count < NAMES_MAX - 1; layer++)
 		if (layer->level == LEVEL_SEGMENT)
 			names[count++] = layer->name;
 	names[count] = NULL;
 	append_names(allowed, sizeof(allowed), names);
-	return node_error(node, err, "layers: the stack has no transport, "
-	    "allowed on top: %s", allowed);
+	return node_error(node, err, "layers: the stack has no transport%s%s, "
+	    "allowed on top: %s", i > 0 ? " above " : "",
+	    i > 0 ? stack->use[i - 1].layer->name : "", allowed);
 }
 
 int

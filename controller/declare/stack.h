@@ -55,12 +55,25 @@ uint64_t layers_min_mtu(const struct layer_stack *stack);
 bool layers_agree_above_frame(const struct layer_stack *left,
     const struct layer_stack *right);
 
-/* The protocol that the stack ends in. */
+/* The lowest layer lies on a medium without a gap of its own between frames:
+ * takes the row for that where there is one. */
+void layers_settle_bare(struct layer_stack *stack);
+/* The worst accuracy of the rows. */
+enum accuracy layers_accuracy(const struct layer_stack *stack);
+
+/* The protocol that the stack ends in; false: its top is none that a trial
+ * can use, *out is then the nearest. */
+bool layers_ends_in_protocol(const struct layer_stack *stack,
+    enum protocol *out);
+/* The protocol that the stack ends in, or the nearest. */
 enum protocol layers_protocol(const struct layer_stack *stack);
 /* The stack with its transport and all above it replaced; options that were
  * declared for a layer which stays are kept. */
 void layers_with_protocol(const struct layer_stack *stack,
     enum protocol protocol, struct layer_stack *out);
+/* What lies above the uppermost IP layer, "tcp+tls"; returns buf. */
+const char *layers_top_text(const struct layer_stack *stack, char *buf,
+    size_t size);
 /* "ethernet, vlan, ipv4, tcp"; returns buf. */
 const char *layers_text(const struct layer_stack *stack, char *buf,
     size_t size);

@@ -41,8 +41,8 @@ sender_value(const struct account *account, const struct trial_run *run,
 static uint64_t
 declared_segment_bytes(const struct ceiling *ceiling)
 {
-	return ceiling->level_bytes_num[LEVEL_PAYLOAD] /
-	    ceiling->level_bytes_den;
+	return (uint64_t)(ceiling->level_bytes_num[LEVEL_PAYLOAD] /
+	    ceiling->level_bytes_den);
 }
 
 /* Payload rate with segments of another size: the octets around a segment

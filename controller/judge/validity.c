@@ -353,8 +353,8 @@ note_segment_size(const struct verdict_input *input, enum direction direction,
 	if (ceiling->reference || ceiling->protocol != PROTOCOL_TCP ||
 	    ceiling->level_bytes_den == 0)
 		return;
-	declared = ceiling->level_bytes_num[LEVEL_PAYLOAD] /
-	    ceiling->level_bytes_den;
+	declared = (uint64_t)(ceiling->level_bytes_num[LEVEL_PAYLOAD] /
+	    ceiling->level_bytes_den);
 	while ((way = next_counted(input, direction, &at, NULL)) != NULL) {
 		uint64_t mss =
 		    way->sender.last.value[TCP_SAMPLE_snd_mss_bytes];

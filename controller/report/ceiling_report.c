@@ -91,7 +91,7 @@ csv_text(const char *text, FILE *out)
 
 struct csv_row {
 	const char *kind, *name, *class, *source;
-	uint64_t bytes_num, bytes_den;	/* den 0: none */
+	uint128 bytes_num, bytes_den;	/* den 0: none */
 	uint64_t bps;
 	bool binding;
 };
@@ -104,7 +104,7 @@ csv_row(enum direction direction, const struct csv_row *row, FILE *out)
 	(void)fprintf(out, ",%s,", row->class);
 	if (row->bytes_den != 0 && row->bytes_num % row->bytes_den == 0)
 		(void)fprintf(out, "%" PRIu64,
-		    row->bytes_num / row->bytes_den);
+		    (uint64_t)(row->bytes_num / row->bytes_den));
 	else if (row->bytes_den != 0)
 		(void)fprintf(out, "%.6f",
 		    (double)row->bytes_num / (double)row->bytes_den);

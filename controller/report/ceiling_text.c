@@ -102,11 +102,11 @@ fill_octets(struct ladder_column *column, const struct ceiling *ceiling)
 		scale = 1000;
 	}
 	for (i = 0; i < LEVELS; i++)
-		levels[i] = fraction_make((uint128)scale *
-		    ceiling->level_bytes_num[i], ceiling->level_bytes_den);
+		levels[i] = fraction_make(scale * ceiling->level_bytes_num[i],
+		    ceiling->level_bytes_den);
 	for (i = 0; i < ceiling->steps_count; i++)
-		steps[i] = fraction_make((uint128)scale *
-		    ceiling->steps[i].bytes_num, ceiling->steps[i].bytes_den);
+		steps[i] = fraction_make(scale * ceiling->steps[i].bytes_num,
+		    ceiling->steps[i].bytes_den);
 	round_levels(column, ceiling, levels, steps);
 }
 

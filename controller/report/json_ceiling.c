@@ -14,11 +14,11 @@ static const char *const level_members[LEVELS] = {
 
 /* Whole octets stay whole. */
 static json_t *
-octets(uint64_t num, uint64_t den)
+octets(uint128 num, uint128 den)
 {
 	if (den == 0)
 		return json_null();
-	return num % den == 0 ? json_value_u64(num / den) :
+	return num % den == 0 ? json_value_u64((uint64_t)(num / den)) :
 	    json_value_real((double)num / (double)den);
 }
 

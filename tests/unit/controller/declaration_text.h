@@ -58,6 +58,19 @@ circuit_of(const char *line_rate, const char *layers, const char *more)
 	return circuit_accepted(text);
 }
 
+/* Its first segment under its declared stack in one direction. */
+static inline void
+segment_of(const struct circuit *circuit, enum direction direction,
+    struct path_segment *out)
+{
+	const struct load load = { .direction = direction, .declared = true };
+	struct error err;
+	char why[1024];
+
+	if (path_segment_make(circuit, 0, &load, out, &err) == -1)
+		fail_msg("%s", error_text(&err, why, sizeof(why)));
+}
+
 /* Its ceiling; every circuit here is the same in both directions. */
 static inline void
 ceiling_of(const struct circuit *circuit, enum protocol protocol,

@@ -127,25 +127,25 @@ frame_rates_equal_rfc_2544_and_rfc_5180(void **state)
 	static const char *const rates[] = { "10 Mbit/s", "100 Mbit/s",
 		"1 Gbit/s", "10 Gbit/s" };
 	struct circuit *circuit;
+	struct path_segment segment;
 	struct overhead o;
-	struct fraction rate;
 	struct error err;
 	size_t i, n;
 
 	(void)state;
 	for (n = 0; n < COUNT(rates); n++) {
 		circuit = circuit_of(rates[n], "ethernet, ipv4, udp", "");
-		assert_int_equal(capacity_compute(&circuit->segments[0].medium,
-		    DIRECTION_B_TO_A, &rate, &err), 0);
+		segment_of(circuit, DIRECTION_B_TO_A, &segment);
 		for (i = 0; i < COUNT(frame_rate_vectors); i++) {
 			if (frame_rate_vectors[i].per_second[n] == 0)
 				continue;
 			assert_int_equal(overhead_compute(
 			    &circuit->segments[0].layers,
-			    frame_rate_vectors[i].frame_bytes - 18, &o, &err),
-			    0);
+			    frame_rate_vectors[i].frame_bytes - 18, false,
+			    &o, &err), 0);
 			assert_int_equal(fraction_floor(fraction_divide(
-			    fraction_divide(rate, fraction_whole(8)),
+			    fraction_divide(path_offered_bps(&segment),
+			    fraction_whole(8)),
 			    o.octets[LEVEL_LINE])),
 			    frame_rate_vectors[i].per_second[n]);
 		}

@@ -289,13 +289,15 @@ an_override_takes_the_place_of_what_the_file_says(void **state)
 	const char *const overrides[] = { "medium.line-rate=10 Gbit/s",
 		"mtu=9000 B", "service.committed=1 Gbit/s" };
 	const char *const wrong[] = { "medium.line-rate=fast" };
+	struct path_segment segment;
 	struct circuit *c = NULL;
 	struct error err;
 
 	(void)state;
 	assert_int_equal(circuit_read_text(HEAD, strlen(HEAD), "test",
 	    overrides, COUNT(overrides), &c, &err), 0);
-	assert_int_equal(c->segments[0].medium.parameters.line_rate_bps[0],
+	segment_of(c, DIRECTION_A_TO_B, &segment);
+	assert_int_equal(fraction_floor(segment.capacity.line_bps),
 	    10000000000);
 	assert_int_equal(circuit_mtu(c), 9000);
 	assert_int_equal(c->services[0].committed_bps[1], 1000000000);

@@ -5,7 +5,7 @@
 #include <stdint.h>
 #include <cmocka.h>
 
-#include "ceiling/fraction.h"
+#include "declare/fraction.h"
 
 #define COUNT(array) (sizeof(array) / sizeof((array)[0]))
 

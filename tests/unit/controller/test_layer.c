@@ -18,9 +18,14 @@ every_row_is_complete_and_found_by_its_name(void **state)
 
 	(void)state;
 	for (layer = layer_table; layer->name != NULL; layer++) {
-		assert_ptr_equal(layer_find(layer->name), layer);
+		for (i = 0; layer->below[i] != NULL; i++)
+			assert_ptr_equal(layer_find_on(layer->name,
+			    layer->below[i]), layer);
 		for (other = layer + 1; other->name != NULL; other++)
-			assert_string_not_equal(layer->name, other->name);
+			if (strcmp(layer->name, other->name) == 0)
+				assert_int_equal(layer->level, other->level);
+		assert_true(layer->memory == NULL ||
+		    layer->accuracy != ACCURACY_EXACT);
 		assert_non_null(layer->title);
 		assert_non_null(layer->inside);
 		assert_non_null(layer->formula);
@@ -33,7 +38,8 @@ every_row_is_complete_and_found_by_its_name(void **state)
 		    layer->ip_version != 0);
 		assert_non_null(layer->below[0]);
 		for (i = 0; layer->below[i] != NULL; i++)
-			if (layer->below[i][0] != '\0')
+			if (layer->below[i][0] != '\0' &&
+			    strcmp(layer->below[i], "bare") != 0)
 				assert_non_null(layer_find(layer->below[i]));
 		for (i = 0; layer->fields != NULL &&
 		    layer->fields[i].name != NULL; i++)

@@ -5,9 +5,7 @@
 #include <stdint.h>
 #include <cmocka.h>
 
-#include "ceiling/capacity.h"
 #include "declaration_text.h"
-#include "declare/layer.h"
 
 #define COUNT(array) (sizeof(array) / sizeof((array)[0]))
 #define REST "\nlayers: [ ethernet, ipv4, tcp ]\n"
@@ -15,14 +13,15 @@
 static void
 every_row_is_complete_and_found_by_its_name(void **state)
 {
-	const struct medium *medium, *other;
-	size_t i;
+	const struct medium *medium;
+	size_t i, m, n;
 
 	(void)state;
-	for (medium = medium_table; medium->name != NULL; medium++) {
+	for (m = 0; media[m] != NULL; m++) {
+		medium = media[m];
 		assert_ptr_equal(medium_find(medium->name), medium);
-		for (other = medium + 1; other->name != NULL; other++)
-			assert_string_not_equal(medium->name, other->name);
+		for (n = m + 1; media[n] != NULL; n++)
+			assert_string_not_equal(medium->name, media[n]->name);
 		assert_non_null(medium->title);
 		assert_non_null(medium->fields);
 		assert_string_equal(medium->fields[0].name, "kind");
@@ -30,22 +29,21 @@ every_row_is_complete_and_found_by_its_name(void **state)
 		assert_non_null(medium->source);
 		assert_non_null(medium->accuracy_note);
 		assert_non_null(accuracy_name(medium->accuracy));
-		assert_int_equal(medium->rate == NULL,
+		assert_true(medium->memory == NULL ||
+		    medium->accuracy != ACCURACY_EXACT);
+		assert_int_equal(medium->capacity == NULL,
 		    medium->accuracy == ACCURACY_REFERENCE);
 		assert_non_null(medium->carries[0]);
 		for (i = 0; medium->carries[i] != NULL; i++) {
-			const struct layer *layer;
-
-			layer = layer_find(medium->carries[i]);
-			assert_non_null(layer);
-			assert_string_equal(layer->below[0], "");
-			assert_true(medium_carries(medium, layer->name));
+			assert_non_null(layer_find_on(medium->carries[i], ""));
+			assert_true(medium_carries(medium,
+			    medium->carries[i]));
 		}
 		for (i = 0; medium->fields[i].name != NULL; i++)
 			assert_non_null(medium->fields[i].help);
 	}
 	assert_null(medium_find("nothing"));
-	assert_false(medium_carries(&medium_table[0], "nothing"));
+	assert_false(medium_carries(media[0], "nothing"));
 }
 
 /* The name of the rate is the MAC rate (IEEE 802.3). */
@@ -65,18 +63,16 @@ ethernet_offers_the_rate_that_names_it(void **state)
 		{ "1.6 Tbit/s", 1600000000000 },
 		{ "1 bit/s", 1 },
 	};
+	struct path_segment segment;
 	struct circuit *circuit;
-	struct fraction rate;
-	struct error err;
 	size_t i;
 
 	(void)state;
 	for (i = 0; i < COUNT(vectors); i++) {
 		circuit = circuit_of(vectors[i].text, "ethernet, ipv4, tcp",
 		    "");
-		assert_int_equal(capacity_compute(&circuit->segments[0].medium,
-		    DIRECTION_A_TO_B, &rate, &err), 0);
-		assert_int_equal(fraction_compare(rate,
+		segment_of(circuit, DIRECTION_A_TO_B, &segment);
+		assert_int_equal(fraction_compare(path_offered_bps(&segment),
 		    fraction_whole(vectors[i].bps)), 0);
 		circuit_free(circuit);
 	}
@@ -88,13 +84,12 @@ a_rate_may_differ_by_direction(void **state)
 	struct circuit *circuit = circuit_accepted("circuit: X\nmedium: "
 	    "{ kind: ethernet, line-rate: { a-to-b: 1 Gbit/s, "
 	    "b-to-a: 100 Mbit/s } }" REST);
-	struct fraction rate;
-	struct error err;
+	struct path_segment segment;
 
 	(void)state;
-	assert_int_equal(capacity_compute(&circuit->segments[0].medium,
-	    DIRECTION_B_TO_A, &rate, &err), 0);
-	assert_int_equal(fraction_floor(rate), 100000000);
+	segment_of(circuit, DIRECTION_B_TO_A, &segment);
+	assert_int_equal(fraction_floor(path_offered_bps(&segment)),
+	    100000000);
 	circuit_free(circuit);
 }
 

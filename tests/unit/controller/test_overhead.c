@@ -59,8 +59,8 @@ compute(const struct octets_vector *v, struct overhead *out)
 	struct error err;
 	char why[1024];
 
-	if (overhead_compute(&circuit->segments[0].layers, v->mtu_bytes, out,
-	    &err) == -1)
+	if (overhead_compute(&circuit->segments[0].layers, v->mtu_bytes, false,
+	    out, &err) == -1)
 		fail_msg("%s", error_text(&err, why, sizeof(why)));
 	circuit_free(circuit);
 }
@@ -203,7 +203,7 @@ alignment_trailer_and_coding_make_whole_cells(void **state)
 	stack->use[0].cost = cells.cost;
 	for (i = 0; i < COUNT(vectors); i++) {
 		assert_int_equal(overhead_compute(stack,
-		    vectors[i].packet_bytes, &o, &err), 0);
+		    vectors[i].packet_bytes, false, &o, &err), 0);
 		assert_octets(o.octets[LEVEL_LINE], 53 * vectors[i].cells,
 		    vectors[i].source);
 		assert_false(o.has_level[LEVEL_FRAME]);
@@ -235,7 +235,7 @@ alignment_above_ip_is_taken_out_of_the_packet(void **state)
 	stack->use[2].layer = &esp;
 	stack->use[2].cost = esp.cost;
 	stack->count = 5;
-	assert_int_equal(overhead_compute(stack, 1500, &o, &err), 0);
+	assert_int_equal(overhead_compute(stack, 1500, false, &o, &err), 0);
 	assert_octets(o.octets[LEVEL_PACKET], 1496, "1438 inside makes 1496");
 	assert_octets(o.octets[LEVEL_SEGMENT], 1418, "1438 less IPv4");
 	assert_octets(o.octets[LEVEL_PAYLOAD], 1386, "1438 - 20 - 32");
@@ -263,9 +263,9 @@ layers_that_leave_no_room_are_refused(void **state)
 	for (i = 0; i < COUNT(vectors); i++) {
 		circuit = circuit_of("1 Gbit/s", vectors[i].layers, "");
 		assert_int_equal(overhead_compute(&circuit->segments[0].layers,
-		    vectors[i].least_bytes, &o, &err), 0);
+		    vectors[i].least_bytes, false, &o, &err), 0);
 		assert_int_equal(overhead_compute(&circuit->segments[0].layers,
-		    vectors[i].least_bytes - 1, &o, &err), -1);
+		    vectors[i].least_bytes - 1, false, &o, &err), -1);
 		assert_int_equal(err.kind, ERROR_INPUT);
 		circuit_free(circuit);
 	}
@@ -295,8 +295,8 @@ a_vector_notices(const struct layer *layer,
 			if (stack->use[n].layer == layer)
 				*value += (uint64_t)(int64_t)change;
 		}
-		noticed = overhead_compute(stack, v->mtu_bytes, &o, &err) ==
-		    -1 ||
+		noticed = overhead_compute(stack, v->mtu_bytes, false, &o,
+		    &err) == -1 ||
 		    fraction_compare(o.octets[LEVEL_LINE],
 		    fraction_whole(v->line)) != 0 ||
 		    fraction_compare(o.octets[LEVEL_FRAME],
@@ -372,7 +372,8 @@ a_vector_notices_each_octet_of_a_record(void **state)
 		    &stack.use[3].cost + members[m]);
 
 		(*value)++;
-		assert_int_equal(overhead_compute(&stack, 1500, &o, &err), 0);
+		assert_int_equal(overhead_compute(&stack, 1500, false, &o,
+		    &err), 0);
 		assert_int_not_equal(fraction_compare(
 		    o.octets[LEVEL_PAYLOAD], fraction_make((uint128)1448 *
 		    16384, 16406)), 0);

@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include "ceiling/fraction.h"
+#include "declare/fraction.h"
 
 #include <assert.h>
 
