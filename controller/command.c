@@ -38,6 +38,19 @@ command_read_override(const struct node *node, const struct field *field,
 }
 
 int
+command_read_sweep(const struct node *node, const struct field *field,
+    void *base, struct error *err)
+{
+	struct command_options *options = base;
+
+	if (options->sweep != NULL)
+		return error_set(err, ERROR_USAGE, "%s: given twice, allowed: "
+		    "one range", field->name);
+	options->sweep = node->text;
+	return 0;
+}
+
+int
 command_unknown(const char *what, const char *name,
     const char *const names[], size_t count, struct error *err)
 {

@@ -32,6 +32,8 @@ struct command_options {
 	char agent_program[4096];	/* --agent-program FILE */
 	const char *overrides[COMMAND_OVERRIDES_MAX];	/* --set, borrowed */
 	size_t overrides_count;
+	const char *sweep;		/* --sweep, borrowed; NULL: none */
+	uint64_t packet_sizes;		/* --packet-sizes: count */
 	uint64_t quiet, verbose;	/* -q, -v: counts */
 	uint64_t help, version;		/* -h, -V: counts */
 };
@@ -66,6 +68,17 @@ struct command {
 	  .read = command_read_override,				\
 	  .help = "KEY=VALUE override what FILE declares, such as "	\
 		  "medium.line-rate='10 Gbit/s'; may be repeated" }
+#define OPTION_SWEEP_ROW						\
+	{ .name = "sweep", .kind = FIELD_CUSTOM,			\
+	  .read = command_read_sweep,					\
+	  .help = "KEY=FROM..TO[:STEP] a table of the ceilings while "	\
+		  "one number of FILE goes through a range, such as "	\
+		  "mtu='64 B..1500 B'; STEP: a tenth of it" }
+#define OPTION_PACKET_SIZES_ROW						\
+	{ .name = "packet-sizes", .kind = FIELD_YES_NO,			\
+	  .offset = offsetof(struct command_options, packet_sizes),	\
+	  .help = "a table of the frame sizes of RFC 2544 and the "	\
+		  "largest, with frames a second and rates" }
 #define OPTION_STATE_ROW						\
 	{ .name = "state", .kind = FIELD_TEXT,				\
 	  .offset = offsetof(struct command_options, state),		\
@@ -103,6 +116,10 @@ extern const struct choice format_text_json[], format_text_json_csv[];
 
 /* Keeps the text of one --set in the struct command_options at base. */
 int command_read_override(const struct node *node, const struct field *field,
+    void *base, struct error *err);
+
+/* Keeps the text of --sweep, which may be given once. */
+int command_read_sweep(const struct node *node, const struct field *field,
     void *base, struct error *err);
 
 /* "unknown WHAT 'NAME', did you mean 'NEAREST'?"; always -1: ERROR_USAGE. */

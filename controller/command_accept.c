@@ -11,6 +11,7 @@
 #include <openssl/rand.h>
 
 #include "ceiling/ceiling.h"
+#include "ceiling/condition.h"
 #include "clock.h"
 #include "command.h"
 #include "conduct/pair.h"
@@ -356,6 +357,22 @@ conduct(struct acceptance *a, struct error *err)
 	return 0;
 }
 
+/* With the conditions that the declaration states. */
+static int
+make_ceilings(struct acceptance *a, struct error *err)
+{
+	for (int d = 0; d < DIRECTIONS_SINGLE; d++) {
+		const struct load load = { .direction = (enum direction)d,
+			.protocol = PROTOCOL_TCP };
+
+		if (ceiling_of_load(a->circuit, &load, &a->ceilings[d],
+		    err) == -1 || condition_add_declared(a->circuit, &load,
+		    &a->ceilings[d], err) == -1)
+			return -1;
+	}
+	return 0;
+}
+
 static int
 begin(struct acceptance *a, struct error *err)
 {
@@ -370,10 +387,8 @@ begin(struct acceptance *a, struct error *err)
 	};
 	unsigned char random[10];
 
-	for (int d = 0; d < DIRECTIONS_SINGLE; d++)
-		if (ceiling_compute(a->circuit, (enum direction)d,
-		    PROTOCOL_TCP, &a->ceilings[d], err) == -1)
-			return -1;
+	if (make_ceilings(a, err) == -1)
+		return -1;
 	if (RAND_bytes(random, sizeof(random)) != 1)
 		return error_set(err, ERROR_INTERNAL, "no random numbers");
 	a->started_utc_ns = clock_utc_ns();

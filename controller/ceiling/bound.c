@@ -6,6 +6,7 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "ceiling/name.h"
 #include "error.h"
 
 static const char *const class_names[] = {
@@ -29,7 +30,7 @@ segment_text(const struct circuit *circuit, size_t i, char *buf, size_t size)
 
 	buf[0] = '\0';
 	if (name[0] != '\0')
-		(void)snprintf(buf, size, " of segment '%s'", name);
+		name_join(buf, size, " of segment '", name, "'");
 	return buf;
 }
 
@@ -42,14 +43,15 @@ start(enum bound_class class, size_t i, struct exact_bound *out)
 	out->counted_at = LEVEL_PAYLOAD;
 }
 
-/* A rate over the octets that it counts for one packet. */
+/* A rate over what it counts of one packet. */
 static void
 set_payload(const struct path_segment *segment, struct fraction rate_bps,
     struct fraction counted_octets, struct exact_bound *out)
 {
-	out->payload = fraction_multiply(rate_bps, fraction_divide(
-	    segment->overhead.octets[LEVEL_PAYLOAD], counted_octets));
-	out->bound.payload_bps = fraction_floor(out->payload);
+	out->bps_an_octet = fraction_divide(rate_bps, counted_octets);
+	out->payload = mixed_product(out->bps_an_octet,
+	    segment->overhead.octets[LEVEL_PAYLOAD]);
+	out->bound.payload_bps = out->payload.whole;
 }
 
 void
@@ -62,11 +64,10 @@ bound_medium(const struct circuit *circuit, size_t i,
 	start(BOUND_MEDIUM, i, out);
 	set_payload(segment, path_offered_bps(segment),
 	    path_octets_on_line(segment, LEVEL_LINE), out);
-	(void)snprintf(out->bound.name, sizeof(out->bound.name),
-	    "%s line%s", medium->name,
-	    segment_text(circuit, i, where, sizeof(where)));
-	(void)snprintf(out->bound.source, sizeof(out->bound.source), "%s",
-	    medium->source);
+	name_join(out->bound.name, sizeof(out->bound.name), medium->name,
+	    " line", segment_text(circuit, i, where, sizeof(where)));
+	name_join(out->bound.source, sizeof(out->bound.source),
+	    medium->source, "", "");
 }
 
 bool
@@ -81,28 +82,40 @@ bound_channel(const struct circuit *circuit, size_t i,
 	start(BOUND_MEDIUM, i, out);
 	set_payload(segment, fraction_multiply(fraction_whole(channel_bps),
 	    segment->share), path_octets_on_line(segment, LEVEL_LINE), out);
-	(void)snprintf(out->bound.name, sizeof(out->bound.name),
-	    "channel capacity%s", segment_text(circuit, i, where,
-	    sizeof(where)));
-	(void)snprintf(out->bound.source, sizeof(out->bound.source),
-	    "Shannon 1949: C = B log2(1 + S/N)");
+	name_join(out->bound.name, sizeof(out->bound.name),
+	    "channel capacity", segment_text(circuit, i, where,
+	    sizeof(where)), "");
+	name_join(out->bound.source, sizeof(out->bound.source),
+	    "Shannon 1949: C = B log2(1 + S/N)", "", "");
 	return true;
 }
 
-/* "committed 100 Mbit/s at frame" */
+/* "committed 100 Mbit/s at frame", "committed 10 Mbit/s + excess 5 Mbit/s, not
+ * guaranteed, at frame" */
 static void
 name_contract(const struct service *service, enum direction direction,
     const char *where, struct bound *out)
 {
-	char rate[32];
-	bool committed = service->committed_bps[direction] != FIELD_UNSET;
+	const char *level = level_name((enum layer_level)service->counted_at);
+	uint64_t committed_bps = service->committed_bps[direction];
+	bool committed = committed_bps != FIELD_UNSET;
+	char rate[32], excess[32];
 
-	(void)snprintf(out->name, sizeof(out->name), "%s %s at %s%s",
-	    committed ? "committed" : "peak",
-	    units_format_exact(service_rate(service, direction),
-	    DIMENSION_RATE, rate, sizeof(rate)),
-	    level_name((enum layer_level)service->counted_at), where);
+	(void)units_format_exact(committed ? committed_bps :
+	    service_rate(service, direction), DIMENSION_RATE, rate,
+	    sizeof(rate));
 	(void)snprintf(out->source, sizeof(out->source), "declared");
+	if (service->excess_bps[direction] == FIELD_UNSET) {
+		(void)snprintf(out->name, sizeof(out->name), "%s %s at %s%s",
+		    committed ? "committed" : "peak", rate, level, where);
+		return;
+	}
+	(void)snprintf(out->name, sizeof(out->name), "committed %s + excess "
+	    "%s, not guaranteed, at %s%s", rate, units_format_exact(
+	    service->excess_bps[direction], DIMENSION_RATE, excess,
+	    sizeof(excess)), level, where);
+	(void)snprintf(out->source, sizeof(out->source), "declared; RFC 4115: "
+	    "only the committed rate is guaranteed");
 }
 
 static void
@@ -110,16 +123,22 @@ contract_of(const struct service *service, enum direction direction, size_t i,
     const struct path_segment *segment, struct exact_bound *out)
 {
 	enum layer_level level = (enum layer_level)service->counted_at;
+	struct fraction rate_bps, counted;
 
 	assert(segment->overhead.has_level[level]);
 	start(BOUND_CONTRACT, i, out);
-	set_payload(segment, fraction_whole(service_rate(service, direction)),
-	    level == LEVEL_LINE && !segment->reference ?
+	rate_bps = fraction_whole(service_rate(service, direction));
+	counted = level == LEVEL_LINE && !segment->reference ?
 	    path_line_octets(segment) :
-	    path_octets_in_contract(segment, level), out);
+	    path_octets_in_contract(segment, level);
+	set_payload(segment, rate_bps, counted, out);
 	out->counted_at = level;
-	if (service->burst_bytes[direction] != FIELD_UNSET)
-		out->burst_bytes = service->burst_bytes[direction];
+	if (service->burst_bytes[direction] == FIELD_UNSET)
+		return;
+	out->burst_bytes = service->burst_bytes[direction];
+	out->burst_payload_bytes = mixed_product(fraction_divide(
+	    fraction_whole(out->burst_bytes), counted),
+	    segment->overhead.octets[LEVEL_PAYLOAD]).whole;
 }
 
 bool
@@ -138,18 +157,25 @@ bound_segment_contract(const struct circuit *circuit, size_t i,
 	return true;
 }
 
-/* All services are counted at the same level, so rates and bursts add up. */
 static void
-add_service(struct service *sum, const struct service *one,
-    enum direction direction)
+add_declared(uint64_t *sum, uint64_t value)
 {
-	sum->committed_bps[direction] = service_rate(sum, direction) +
-	    service_rate(one, direction);
-	if (one->burst_bytes[direction] == FIELD_UNSET)
-		return;
-	if (sum->burst_bytes[direction] == FIELD_UNSET)
-		sum->burst_bytes[direction] = 0;
-	sum->burst_bytes[direction] += one->burst_bytes[direction];
+	if (value != FIELD_UNSET)
+		*sum = *sum == FIELD_UNSET ? value : *sum + value;
+}
+
+/* All services are counted at the same level, so rates and bursts add up; a
+ * peak rate alone stands for a committed one. */
+static void
+add_service(struct service *sum, const struct service *one, enum direction d)
+{
+	if (sum->committed_bps[d] == FIELD_UNSET)
+		sum->committed_bps[d] = sum->peak_bps[d];
+	add_declared(&sum->committed_bps[d],
+	    one->committed_bps[d] != FIELD_UNSET ? one->committed_bps[d] :
+	    one->peak_bps[d]);
+	add_declared(&sum->excess_bps[d], one->excess_bps[d]);
+	add_declared(&sum->burst_bytes[d], one->burst_bytes[d]);
 }
 
 bool
@@ -191,10 +217,8 @@ bound_device(const struct circuit *circuit, size_t i,
 	if (segment->acks_in_contract)
 		packets = fraction_add(packets, segment->acks_per_packet);
 	start(BOUND_CONTRACT, i, out);
-	out->payload = fraction_divide(fraction_multiply(fraction_whole(
-	    8 * device->packets_per_s),
-	    segment->overhead.octets[LEVEL_PAYLOAD]), packets);
-	out->bound.payload_bps = fraction_floor(out->payload);
+	set_payload(segment, fraction_whole(8 * device->packets_per_s),
+	    packets, out);
 	(void)snprintf(out->bound.name, sizeof(out->bound.name),
 	    "%s at %" PRIu64 " packets/s%s", device->name[0] != '\0' ?
 	    device->name : "device", device->packets_per_s,

@@ -34,10 +34,12 @@ struct bound {
 /* A bound with what the ceiling needs beside it. */
 struct exact_bound {
 	struct bound bound;
-	struct fraction payload;	/* bit/s */
+	struct fraction bps_an_octet;	/* of the packet, at any level */
+	struct mixed payload;		/* bit/s */
 	size_t segment;			/* where it lies */
 	enum layer_level counted_at;	/* of a contract; else payload */
 	uint64_t burst_bytes;		/* of a contract, counted like it */
+	uint64_t burst_payload_bytes;	/* payload that it lets through */
 };
 
 /* The line of segment i under the load. */

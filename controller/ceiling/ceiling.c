@@ -2,10 +2,13 @@
 #include "ceiling/ceiling.h"
 
 #include <assert.h>
+#include <stddef.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
+#include "ceiling/both.h"
+#include "ceiling/name.h"
 #include "error.h"
 
 /* What is worked out before it is rounded. */
@@ -55,7 +58,7 @@ keep_bound(struct assembly *a, const struct exact_bound *bound,
 
 	assert(index < BOUNDS_MAX);
 	out->bounds[index] = bound->bound;
-	if (index > 0 && fraction_compare(bound->payload,
+	if (index > 0 && mixed_compare(bound->payload,
 	    a->binding.payload) >= 0)
 		return;
 	a->binding = *bound;
@@ -95,9 +98,13 @@ fill_octets(const struct path_segment *segment,
     const struct fraction octets[LEVELS], struct ceiling *out)
 {
 	const struct overhead *overhead = &segment->overhead;
+	struct fraction stream = path_stream_octets(segment);
 	uint128 den = fractions_denominator(octets, LEVELS);
 	int level;
 
+	/* Whole: it fills the packet. */
+	assert(stream.den == 1);
+	out->stream_bytes_num = stream.num * den;
 	for (level = 0; level < LEVELS; level++) {
 		out->has_level[level] = overhead->has_level[level];
 		out->level_bytes_num[level] = octets[level].num *
@@ -107,7 +114,8 @@ fill_octets(const struct path_segment *segment,
 	out->packet_bytes = overhead->packet_bytes;
 }
 
-/* A step that is of no packet and leads to a lower rate of the line. */
+/* A step that is of no packet and leads to a lower rate of the line; only the
+ * last of them is at its end. */
 static struct ladder_step *
 add_line_step(struct ceiling *out, const char *name, uint64_t bps,
     const char *source)
@@ -115,9 +123,11 @@ add_line_step(struct ceiling *out, const char *name, uint64_t bps,
 	struct ladder_step *step;
 
 	assert(out->steps_count < LADDER_STEPS_MAX);
+	if (out->steps_count > 0)
+		out->steps[out->steps_count - 1].reaches_level = false;
 	step = &out->steps[out->steps_count++];
 	memset(step, 0, sizeof(*step));
-	(void)snprintf(step->name, sizeof(step->name), "%s", name);
+	name_join(step->name, sizeof(step->name), name, "", "");
 	step->bytes_den = 1;
 	step->bps = bps;
 	step->reaches_level = true;
@@ -128,19 +138,24 @@ add_line_step(struct ceiling *out, const char *name, uint64_t bps,
 
 void
 ladder_round(const struct ladder_step *steps, size_t count,
-    const struct fraction values[], const struct fraction levels[LEVELS],
-    uint64_t out[])
+    const struct mixed values[], const struct mixed levels[LEVELS],
+    uint64_t top, uint64_t out[])
 {
-	struct fraction span[LADDER_STEPS_MAX];
+	struct mixed span[LADDER_STEPS_MAX], level;
 	size_t i, begin = 0;
 
 	for (i = 0; i < count; i++) {
 		span[i - begin] = values[i];
 		if (!steps[i].reaches_level)
 			continue;
-		span[i - begin] = fraction_add(span[i - begin],
-		    fraction_rest(levels[steps[i].level]));
-		fractions_apportion(span, i - begin + 1, &out[begin]);
+		level = levels[steps[i].level];
+		span[i - begin] = mixed_split(fraction_add(values[i].rest,
+		    level.rest));
+		span[i - begin].whole += values[i].whole;
+		assert(top >= level.whole);
+		apportion(span, i - begin + 1, top - level.whole,
+		    &out[begin]);
+		top = level.whole;
 		begin = i + 1;
 	}
 	assert(begin == count);
@@ -189,8 +204,8 @@ add_medium_steps(const struct medium *medium,
 		if (octets.num == 0)
 			continue;
 		step = add_packet_step(packet, octets, taken->source);
-		(void)snprintf(step->name, sizeof(step->name), "%s: %s",
-		    medium->name, taken->what);
+		name_join(step->name, sizeof(step->name), medium->name, ": ",
+		    taken->what);
 	}
 	octets = fraction_subtract(carried,
 	    segment->overhead.octets[LEVEL_LINE]);
@@ -198,8 +213,7 @@ add_medium_steps(const struct medium *medium,
 		return;
 	step = add_packet_step(packet, octets, "RFC 9293 s3.8.6.3");
 	(void)snprintf(step->name, sizeof(step->name), "acknowledgements, one "
-	    "for %.4g segments", fraction_double(fraction_divide(
-	    fraction_whole(1), segment->acks_per_packet)));
+	    "for %.4g segments", fraction_double(segment->segments_per_ack));
 }
 
 static void
@@ -213,11 +227,34 @@ add_layer_steps(const struct overhead *overhead, struct packet_steps *packet)
 
 		step = add_packet_step(packet, part->octets,
 		    part->layer->source);
-		(void)snprintf(step->name, sizeof(step->name), "%s: %s",
-		    part->layer->name, part->what);
+		name_join(step->name, sizeof(step->name), part->layer->name,
+		    ": ", part->what);
 		step->reaches_level = part->reaches_level;
 		step->level = part->level;
 	}
+}
+
+/* What others get of the narrow segment's line, and what the contract leaves
+ * of the rest. */
+static void
+fill_unused(const struct assembly *a, const struct path_segment *segment,
+    struct mixed used, struct ceiling *out)
+{
+	const struct medium_capacity *capacity = &segment->capacity;
+	struct mixed own = mixed_product(capacity->line_bps, segment->share);
+
+	out->line_rate_bps = fraction_floor(capacity->line_bps);
+	out->shared_bps = out->line_rate_bps - own.whole;
+	if (out->shared_bps != 0)
+		(void)add_line_step(out, capacity->contention == 1 ?
+		    "the other direction" : "other users", out->shared_bps,
+		    "declared");
+	if (mixed_compare(used, own) == 0)
+		return;
+	out->unused_bps = own.whole - used.whole;
+	(void)add_line_step(out, a->binding.bound.class == BOUND_MEDIUM ?
+	    "beyond the channel's capacity" : "left unused by the contract",
+	    out->unused_bps, out->bounds[a->binding_index].source);
 }
 
 /* Rate at each level, and the steps from one to the next. */
@@ -225,58 +262,34 @@ static void
 fill_rates(const struct assembly *a, const struct path_segment *segment,
     struct ceiling *out)
 {
-	struct fraction rates[LADDER_STEPS_MAX], levels[LEVELS];
-	struct fraction octets[LEVELS], bps_an_octet;
-	struct packet_steps packet = {
-		.steps = &out->steps[out->steps_count] };
+	struct mixed rates[LADDER_STEPS_MAX], levels[LEVELS];
+	struct fraction octets[LEVELS];
+	struct packet_steps packet;
 	uint64_t bps[LADDER_STEPS_MAX];
 	size_t i;
 
 	memcpy(octets, segment->overhead.octets, sizeof(octets));
 	octets[LEVEL_LINE] = path_line_octets(segment);
 	fill_octets(segment, octets, out);
-	bps_an_octet = fraction_divide(a->binding.payload,
-	    octets[LEVEL_PAYLOAD]);
 	for (i = 0; i < LEVELS; i++) {
-		levels[i] = fraction_multiply(octets[i], bps_an_octet);
-		out->rate_bps[i] = fraction_floor(levels[i]);
+		levels[i] = mixed_product(octets[i],
+		    a->binding.bps_an_octet);
+		out->rate_bps[i] = levels[i].whole;
 	}
+	fill_unused(a, segment, levels[LEVEL_LINE], out);
+	packet.steps = &out->steps[out->steps_count];
+	packet.count = 0;
 	add_medium_steps(a->circuit->segments[out->narrow].medium.medium,
 	    segment, &packet);
 	add_layer_steps(&segment->overhead, &packet);
 	for (i = 0; i < packet.count; i++)
-		rates[i] = fraction_multiply(packet.octets[i], bps_an_octet);
-	ladder_round(packet.steps, packet.count, rates, levels, bps);
+		rates[i] = mixed_product(packet.octets[i],
+		    a->binding.bps_an_octet);
+	ladder_round(packet.steps, packet.count, rates, levels,
+	    levels[LEVEL_LINE].whole, bps);
 	for (i = 0; i < packet.count; i++)
 		packet.steps[i].bps = bps[i];
 	out->steps_count += packet.count;
-}
-
-/* What others get of the narrow segment's line, and what the contract leaves
- * of the rest. */
-static void
-fill_unused(const struct assembly *a, const struct path_segment *segment,
-    struct ceiling *out)
-{
-	const struct medium_capacity *capacity = &segment->capacity;
-	struct fraction line = capacity->line_bps, own, used;
-
-	out->line_rate_bps = fraction_floor(line);
-	own = fraction_multiply(line, segment->share);
-	out->shared_bps = out->line_rate_bps - fraction_floor(own);
-	if (out->shared_bps != 0)
-		(void)add_line_step(out, capacity->contention == 1 ?
-		    "the other direction" : "other users", out->shared_bps,
-		    "declared");
-	used = fraction_multiply(a->binding.payload, fraction_divide(
-	    path_line_octets(segment),
-	    segment->overhead.octets[LEVEL_PAYLOAD]));
-	if (fraction_compare(used, own) == 0)
-		return;
-	out->unused_bps = fraction_floor(own) - fraction_floor(used);
-	(void)add_line_step(out, a->binding.bound.class == BOUND_MEDIUM ?
-	    "beyond the channel's capacity" : "left unused by the contract",
-	    out->unused_bps, out->bounds[a->binding_index].source);
 }
 
 static void
@@ -286,21 +299,22 @@ fill_binding(const struct assembly *a, const struct path_segment *segment,
 	const struct exact_bound *binding = &a->binding;
 	const struct medium_capacity *capacity = &segment->capacity;
 
-	out->payload_num = binding->payload.num;
-	out->payload_den = binding->payload.den;
+	out->payload = binding->payload;
 	out->tolerance_ppm = capacity->tolerance_ppm;
 	out->accuracy = segment->accuracy;
 	out->shared = capacity->duplex == DUPLEX_SHARED;
 	if (segment->acks_per_packet.num != 0 && (segment->acks_on_line ||
 	    segment->acks_in_contract || capacity->counts_acks))
-		out->segments_per_ack = 1 /
-		    fraction_double(segment->acks_per_packet);
+		out->segments_per_ack =
+		    fraction_double(segment->segments_per_ack);
 	memcpy(out->notes, capacity->notes,
 	    capacity->notes_count * sizeof(out->notes[0]));
 	out->notes_count = capacity->notes_count;
 	out->burst_bytes = binding->burst_bytes;
+	out->burst_payload_bytes = binding->burst_payload_bytes;
 	out->binding_counted_at = binding->counted_at;
 	out->binding_counted_ratio = fraction_double(fraction_divide(
+	    binding->counted_at == LEVEL_LINE ? path_line_octets(segment) :
 	    segment->overhead.octets[binding->counted_at],
 	    segment->overhead.octets[LEVEL_PAYLOAD]));
 }
@@ -310,7 +324,7 @@ fill_reference(const struct assembly *a, struct ceiling *out)
 {
 	out->reference = true;
 	out->accuracy = ACCURACY_REFERENCE;
-	out->payload_den = 1;
+	out->payload.rest = fraction_whole(0);
 	out->binding_counted_at = LEVEL_PAYLOAD;
 	out->binding_counted_ratio = 1.0;
 	fill_octets(&a->segments[0], a->segments[0].overhead.octets, out);
@@ -322,7 +336,7 @@ assemble(struct assembly *a, struct ceiling *out)
 	const struct path_segment *segment;
 	struct layer_stack stack;
 
-	memset(out, 0, sizeof(*out));
+	memset(out, 0, offsetof(struct ceiling, bounds));
 	out->direction = a->load->direction;
 	out->both = a->load->both;
 	path_stack(a->circuit, 0, a->load, &stack);
@@ -336,7 +350,6 @@ assemble(struct assembly *a, struct ceiling *out)
 	out->narrow = a->binding.segment;
 	segment = &a->segments[out->narrow];
 	fill_binding(a, segment, out);
-	fill_unused(a, segment, out);
 	fill_rates(a, segment, out);
 }
 
@@ -344,10 +357,14 @@ int
 ceiling_of_load(const struct circuit *circuit, const struct load *load,
     struct ceiling *out, struct error *err)
 {
-	struct assembly a = { .circuit = circuit, .load = load };
+	struct load settled = *load;
+	struct assembly a = { .circuit = circuit, .load = &settled };
 	int rc = -1;
 
 	assert(load->direction < DIRECTIONS_SINGLE);
+	if (load->both && load->other_packets.num == 0 &&
+	    both_settle(circuit, &settled, err) == -1)
+		return -1;
 	a.segments = malloc(circuit->segments_count * sizeof(*a.segments));
 	if (a.segments == NULL)
 		return error_errno(err, ERROR_INTERNAL, "ceiling");
@@ -360,6 +377,21 @@ ceiling_of_load(const struct circuit *circuit, const struct load *load,
 }
 
 int
+ceiling_range(const struct circuit *circuit, const struct load *load,
+    struct ceiling *low, struct ceiling *high, struct error *err)
+{
+	struct load offload = *load;
+	struct path_segment segment;
+
+	offload.segments_per_ack = fraction_whole(0);
+	if (path_segment_make(circuit, 0, &offload, &segment, err) == -1 ||
+	    ceiling_of_load(circuit, &offload, low, err) == -1)
+		return -1;
+	offload.segments_per_ack = path_offload_segments(&segment);
+	return ceiling_of_load(circuit, &offload, high, err);
+}
+
+int
 ceiling_compute(const struct circuit *circuit, enum direction direction,
     enum protocol protocol, struct ceiling *out, struct error *err)
 {
@@ -367,6 +399,18 @@ ceiling_compute(const struct circuit *circuit, enum direction direction,
 		.protocol = protocol };
 
 	return ceiling_of_load(circuit, &load, out, err);
+}
+
+const struct bound *
+ceiling_binding(const struct ceiling *ceiling)
+{
+	size_t i;
+
+	for (i = 0; i < ceiling->bounds_count; i++)
+		if (ceiling->bounds[i].binding &&
+		    ceiling->bounds[i].class != BOUND_CONDITION)
+			return &ceiling->bounds[i];
+	return NULL;
 }
 
 int

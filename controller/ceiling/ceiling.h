@@ -48,27 +48,33 @@ struct ceiling {
 	bool reference;			/* medium host: no rates below */
 	bool has_level[LEVELS];		/* a medium without frames has none */
 	uint64_t rate_bps[LEVELS];	/* rounded down; 0 without the level */
-	uint128 payload_num, payload_den;	/* exact payload rate */
+	struct mixed payload;		/* bit/s, exact */
 	uint128 level_bytes_num[LEVELS];	/* octets a packet, there */
 	uint128 level_bytes_den;
+	/* The same of the transport's own stream of octets, which windows
+	 * count: payload and what lies above the transport.  0: nothing of the
+	 * transport is acknowledged. */
+	uint128 stream_bytes_num;
 	uint64_t packet_bytes;		/* L, the lowest IP layer's packet */
 	uint64_t line_rate_bps;		/* of the narrow segment's medium */
 	uint64_t shared_bps;		/* line rate that others get */
 	uint64_t unused_bps;		/* line rate that the contract leaves */
-	struct bound bounds[BOUNDS_MAX];
 	size_t bounds_count;
-	struct ladder_step steps[LADDER_STEPS_MAX];
 	size_t steps_count;
 	size_t narrow;			/* segment of the binding bound */
 	uint64_t tolerance_ppm;		/* of the narrow medium's clock */
 	enum accuracy accuracy;		/* of the narrow segment */
-	char notes[MEDIUM_NOTES_MAX][MEDIUM_NOTE_SIZE];	/* on its medium */
 	size_t notes_count;
 	uint64_t burst_bytes;		/* of the binding contract, or 0 */
+	uint64_t burst_payload_bytes;	/* payload that it lets through */
 	/* Level at which the binding contract is counted, and the rate there
 	 * divided by the payload rate; payload and 1 where a medium binds. */
 	uint64_t binding_counted_at;
 	double binding_counted_ratio;
+	/* Last, for nothing beyond their counts is set. */
+	struct bound bounds[BOUNDS_MAX];
+	struct ladder_step steps[LADDER_STEPS_MAX];
+	char notes[MEDIUM_NOTES_MAX][MEDIUM_NOTE_SIZE];	/* on its medium */
 };
 
 /* Ceiling of one direction under a load.  Borrows circuit.
@@ -80,6 +86,13 @@ int ceiling_of_load(const struct circuit *circuit, const struct load *load,
  * and what lies above it are replaced by `protocol`. */
 int ceiling_compute(const struct circuit *circuit, enum direction direction,
     enum protocol protocol, struct ceiling *out, struct error *err);
+/* What to expect of a load before anything is counted: from the declared
+ * segments an acknowledgement to those of one receive offload of 64 KiB.  Both
+ * alike where acknowledgements take nothing from the ceiling. */
+int ceiling_range(const struct circuit *circuit, const struct load *load,
+    struct ceiling *low, struct ceiling *high, struct error *err);
+/* The bound that makes the ceiling; NULL: a reference has none. */
+const struct bound *ceiling_binding(const struct ceiling *ceiling);
 /* The protocol that the declared stack ends in. */
 enum protocol circuit_default_protocol(const struct circuit *circuit);
 
@@ -87,11 +100,12 @@ enum protocol circuit_default_protocol(const struct circuit *circuit);
 int ceiling_add_condition(struct ceiling *ceiling, const char *name,
     uint64_t payload_bps, const char *source, struct error *err);
 
-/* Whole numbers for a column of the ladder: between two levels the steps add up
- * to the difference of the levels' whole parts.  What rounding takes from the
- * lower level goes to its last step; the rest by largest remainders. */
+/* Whole numbers for a column of the ladder that begins at `top`: between two
+ * levels the steps add up to the difference of the levels' whole parts.  What
+ * rounding takes from the lower level goes to its last step; the rest by
+ * largest remainders. */
 void ladder_round(const struct ladder_step *steps, size_t count,
-    const struct fraction values[], const struct fraction levels[LEVELS],
-    uint64_t out[]);
+    const struct mixed values[], const struct mixed levels[LEVELS],
+    uint64_t top, uint64_t out[]);
 
 #endif

@@ -2,34 +2,47 @@
 #include "ceiling/overhead.h"
 
 #include <assert.h>
-#include <inttypes.h>
 #include <stddef.h>
 #include <string.h>
 
 #include "error.h"
 
-/* Octets around what one layer carries. */
+/* What one layer makes of what it carries, in octets. */
 struct wrapping {
-	struct fraction inside;		/* head, trail, tail */
-	struct fraction padding;	/* to align and to min */
-	struct fraction own;		/* carried, inside and padding */
-	struct fraction unpadded;	/* head and carried: no trailer */
-	struct fraction around;		/* before and gap */
-	struct fraction coding;		/* what num/den adds */
-	struct fraction total;
+	struct fraction carried;
+	struct fraction own;		/* with head, trail, tail, padding */
+	struct fraction total;		/* with before and gap, coded */
 };
+
+/* Where in a stack the levels below the payload begin. */
+struct places {
+	size_t frame;			/* SIZE_MAX: nowhere */
+	size_t packet, transport;
+};
+
+static struct places
+find_places(const struct layer_stack *stack)
+{
+	struct places places = { .frame = SIZE_MAX };
+
+	(void)layers_lowest_frame(stack, &places.frame);
+	places.packet = layers_lowest_packet(stack);
+	places.transport = layers_transport(stack);
+	return places;
+}
+
+static uint64_t
+head_bytes(const struct layer_cost *cost, bool upstream)
+{
+	return cost->head_bytes - (upstream ? cost->upstream_less_bytes : 0);
+}
 
 static struct wrapping
 wrap(const struct layer_cost *cost, struct fraction carried, bool upstream)
 {
-	uint64_t head_bytes = cost->head_bytes;
-	struct wrapping w;
+	struct wrapping w = { .carried = carried };
 	struct fraction min = fraction_whole(cost->min_bytes), filled, limit;
 
-	if (upstream)
-		head_bytes -= cost->upstream_less_bytes;
-	w.inside = fraction_whole(head_bytes + cost->trail_bytes +
-	    cost->tail_bytes);
 	filled = fraction_add(carried, fraction_whole(cost->trail_bytes));
 	limit = fraction_whole(cost->limit_bytes);
 	if (cost->limit_bytes == 0 || fraction_compare(filled, limit) < 0) {
@@ -38,16 +51,13 @@ wrap(const struct layer_cost *cost, struct fraction carried, bool upstream)
 		    fraction_compare(filled, limit) > 0)
 			filled = limit;
 	}
-	w.own = fraction_add(filled, fraction_whole(head_bytes +
-	    cost->tail_bytes));
+	w.own = fraction_add(filled, fraction_whole(
+	    head_bytes(cost, upstream) + cost->tail_bytes));
 	if (fraction_compare(w.own, min) < 0)
 		w.own = min;
-	w.padding = fraction_subtract(w.own, fraction_add(carried, w.inside));
-	w.unpadded = fraction_add(carried, fraction_whole(head_bytes));
-	w.around = fraction_whole(cost->before_bytes + cost->gap_bytes);
-	w.total = fraction_multiply(fraction_add(w.own, w.around),
+	w.total = fraction_multiply(fraction_add(w.own, fraction_whole(
+	    cost->before_bytes + cost->gap_bytes)),
 	    fraction_make(cost->num, cost->den));
-	w.coding = fraction_subtract(w.total, fraction_add(w.own, w.around));
 	return w;
 }
 
@@ -59,49 +69,6 @@ unwrap_records(const struct layer_cost *cost, struct fraction octets)
 
 	return fraction_divide(fraction_multiply(octets, record),
 	    wrap(cost, record, false).total);
-}
-
-/* The most that a layer can carry within room_bytes; -1: nothing. */
-static int
-largest_carried(const struct layer_cost *cost, uint64_t room_bytes,
-    uint64_t *carried_bytes)
-{
-	uint64_t fixed_bytes = cost->head_bytes + cost->tail_bytes;
-
-	if (room_bytes <= fixed_bytes)
-		return -1;
-	room_bytes -= fixed_bytes;
-	if (cost->limit_bytes != 0 && cost->limit_bytes <= room_bytes)
-		room_bytes = cost->limit_bytes;
-	else if (cost->align_bytes > 1)
-		room_bytes -= room_bytes % cost->align_bytes;
-	if (room_bytes <= cost->trail_bytes)
-		return -1;
-	*carried_bytes = room_bytes - cost->trail_bytes;
-	return 0;
-}
-
-/* From the lowest IP layer up to the first layer of records or the top. */
-static int
-fit(const struct layer_stack *stack, uint64_t mtu_bytes, size_t *top,
-    uint64_t *carried_bytes, struct error *err)
-{
-	const struct layer_use *use;
-	uint64_t left_bytes = mtu_bytes;
-	size_t i;
-
-	for (i = layers_lowest_packet(stack); i < stack->count; i++) {
-		use = &stack->use[i];
-		if (use->cost.record_bytes != 0)
-			break;
-		if (largest_carried(&use->cost, left_bytes, &left_bytes) == -1)
-			return error_set(err, ERROR_INPUT, "mtu of %" PRIu64
-			    " B: the layers up to %s leave no room for payload",
-			    mtu_bytes, use->layer->name);
-	}
-	*top = i;
-	*carried_bytes = left_bytes;
-	return 0;
 }
 
 static void
@@ -143,18 +110,17 @@ inside_name(const struct layer_use *use)
 
 /* Octets at the levels that the i-th layer of the stack makes. */
 static void
-note_levels(const struct layer_stack *stack, size_t i,
-    const struct wrapping *w, struct fraction octets[LEVELS])
+note_levels(const struct places *places, size_t i, const struct wrapping *w,
+    uint64_t without_tail_bytes, struct fraction octets[LEVELS])
 {
-	size_t frame;
-
-	if (layers_lowest_frame(stack, &frame) && i == frame) {
+	if (i == places->frame) {
 		octets[LEVEL_FRAME] = w->own;
-		octets[LEVEL_FRAME_WITHOUT_FCS] = w->unpadded;
+		octets[LEVEL_FRAME_WITHOUT_FCS] = fraction_add(w->carried,
+		    fraction_whole(without_tail_bytes));
 	}
-	if (i == layers_lowest_packet(stack))
+	if (i == places->packet)
 		octets[LEVEL_PACKET] = w->own;
-	if (i == layers_transport(stack))
+	if (i == places->transport)
 		octets[LEVEL_SEGMENT] = w->own;
 }
 
@@ -165,6 +131,7 @@ wrap_below(const struct layer_stack *stack, size_t top,
     struct fraction carried, bool upstream, struct wrapping wrappings[],
     struct fraction octets[LEVELS])
 {
+	struct places places = find_places(stack);
 	struct wrapping w;
 	size_t i;
 
@@ -172,10 +139,12 @@ wrap_below(const struct layer_stack *stack, size_t top,
 		octets[i] = fraction_whole(0);
 	octets[LEVEL_LINE] = carried;
 	for (i = top; i > 0; i--) {
-		w = wrap(&stack->use[i - 1].cost, octets[LEVEL_LINE],
-		    upstream);
+		const struct layer_cost *cost = &stack->use[i - 1].cost;
+
+		w = wrap(cost, octets[LEVEL_LINE], upstream);
 		octets[LEVEL_LINE] = w.total;
-		note_levels(stack, i - 1, &w, octets);
+		note_levels(&places, i - 1, &w, head_bytes(cost, upstream) +
+		    cost->trail_bytes, octets);
 		if (wrappings != NULL)
 			wrappings[i - 1] = w;
 	}
@@ -192,26 +161,31 @@ overhead_of_packet(const struct layer_stack *stack, uint64_t packet_bytes,
 
 /* Takes one layer off, from outside in. */
 static void
-take_off(const struct layer_stack *stack, size_t i, const struct wrapping *w,
-    struct overhead *out)
+take_off(const struct layer_use *use, const struct places *places, size_t i,
+    const struct wrapping *w, bool upstream, struct overhead *out)
 {
-	const struct layer_use *use = &stack->use[i];
-	size_t frame;
+	const struct layer_cost *cost = &use->cost;
+	struct fraction around = fraction_whole(cost->before_bytes +
+	    cost->gap_bytes);
+	struct fraction inside = fraction_whole(head_bytes(cost, upstream) +
+	    cost->trail_bytes + cost->tail_bytes);
 
-	add_part(out, use->layer, use->layer->coding, w->coding);
-	add_part(out, use->layer, use->layer->around, w->around);
-	if (layers_lowest_frame(stack, &frame) && i == frame) {
+	add_part(out, use->layer, use->layer->coding,
+	    fraction_subtract(w->total, fraction_add(w->own, around)));
+	add_part(out, use->layer, use->layer->around, around);
+	if (i == places->frame) {
 		reach(out, LEVEL_FRAME);
 		out->has_level[LEVEL_FRAME_WITHOUT_FCS] = true;
 	}
-	if (i == layers_lowest_packet(stack)) {
+	if (i == places->packet) {
 		reach(out, LEVEL_PACKET);
 		out->packet_bytes = fraction_floor(w->own);
 	}
-	if (i == layers_transport(stack))
+	if (i == places->transport)
 		reach(out, LEVEL_SEGMENT);
-	add_part(out, use->layer, inside_name(use), w->inside);
-	add_part(out, use->layer, "padding", w->padding);
+	add_part(out, use->layer, inside_name(use), inside);
+	add_part(out, use->layer, "padding", fraction_subtract(w->own,
+	    fraction_add(w->carried, inside)));
 }
 
 static void
@@ -232,21 +206,23 @@ overhead_compute(const struct layer_stack *stack, uint64_t mtu_bytes,
 {
 	struct wrapping wrappings[LAYERS_MAX];
 	struct fraction octets, inner;
-	uint64_t carried_bytes = 0;
-	size_t i, top = 0;
+	struct places places = find_places(stack);
+	struct layers_room room;
+	size_t i;
 
-	if (fit(stack, mtu_bytes, &top, &carried_bytes, err) == -1)
+	if (layers_fit(stack, mtu_bytes, &room, err) == -1)
 		return -1;
 	memset(out, 0, offsetof(struct overhead, parts));
 	out->parts_count = 0;
 	for (i = 0; i < LEVELS; i++)
 		out->ack_octets[i] = fraction_whole(0);
-	octets = fraction_whole(carried_bytes);
-	wrap_below(stack, top, octets, upstream, wrappings, out->octets);
+	octets = fraction_whole(room.carried_bytes);
+	wrap_below(stack, room.top, octets, upstream, wrappings, out->octets);
 	reach(out, LEVEL_LINE);
-	for (i = 0; i < top; i++)
-		take_off(stack, i, &wrappings[i], out);
-	for (i = top; i < stack->count; i++) {
+	for (i = 0; i < room.top; i++)
+		take_off(&stack->use[i], &places, i, &wrappings[i], upstream,
+		    out);
+	for (i = room.top; i < stack->count; i++) {
 		inner = unwrap_records(&stack->use[i].cost, octets);
 		add_part(out, stack->use[i].layer, inside_name(&stack->use[i]),
 		    fraction_subtract(octets, inner));

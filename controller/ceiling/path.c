@@ -4,6 +4,11 @@
 #include <string.h>
 
 #include "error.h"
+#include "measurement.h"
+
+/* What a receiver's host can merge: the largest packet of IPv4, RFC 791. */
+#define OFFLOAD_BYTES 65535
+#define THOUSANDTHS 1000
 
 void
 path_stack(const struct circuit *circuit, size_t i, const struct load *load,
@@ -11,24 +16,31 @@ path_stack(const struct circuit *circuit, size_t i, const struct load *load,
 {
 	const struct layer_stack *stack = &circuit->segments[i].layers;
 
-	if (load->declared)
-		*out = *stack;
-	else
+	if (load->declared) {
+		out->count = stack->count;
+		memcpy(out->use, stack->use,
+		    stack->count * sizeof(out->use[0]));
+	} else {
 		layers_with_protocol(stack, load->protocol, out);
+	}
 }
 
-static struct fraction
-acks_per_packet(const struct layer_stack *stack, const struct load *load)
+static void
+count_acks(const struct layer_stack *stack, const struct load *load,
+    struct path_segment *out)
 {
 	const struct layer_use *transport;
 
+	out->segments_per_ack = out->acks_per_packet = fraction_whole(0);
 	transport = &stack->use[layers_transport(stack)];
 	if (!transport->layer->acknowledged)
-		return fraction_whole(0);
-	if (load->segments_per_ack.num != 0)
-		return fraction_divide(fraction_whole(1),
-		    load->segments_per_ack);
-	return fraction_make(1, transport->options.segments_per_ack);
+		return;
+	out->segments_per_ack = load->segments_per_ack.num != 0 ?
+	    load->segments_per_ack :
+	    fraction_whole(transport->options.segments_per_ack);
+	out->acks_per_packet = fraction_divide(load->both &&
+	    load->other_packets.num != 0 ? load->other_packets :
+	    fraction_whole(1), out->segments_per_ack);
 }
 
 static int
@@ -74,7 +86,7 @@ path_segment_make(const struct circuit *circuit, size_t i,
 	    medium_upstream(use, load->direction), &out->overhead,
 	    err) == -1)
 		return -1;
-	out->acks_per_packet = acks_per_packet(&stack, load);
+	count_acks(&stack, load, out);
 	out->acks_on_line = out->acks_in_contract = false;
 	out->share = fraction_whole(1);
 	out->accuracy = layers_accuracy(&stack);
@@ -84,6 +96,56 @@ path_segment_make(const struct circuit *circuit, size_t i,
 	if (out->reference)
 		return 0;
 	return make_capacity(use, load, out, err);
+}
+
+struct fraction
+path_stream_octets(const struct path_segment *segment)
+{
+	const struct overhead *overhead = &segment->overhead;
+	struct fraction octets = overhead->octets[LEVEL_PAYLOAD];
+	size_t i;
+
+	if (segment->segments_per_ack.num == 0)
+		return fraction_whole(0);
+	for (i = 0; i < overhead->parts_count; i++)
+		if (overhead->parts[i].layer->level == LEVEL_PAYLOAD)
+			octets = fraction_add(octets,
+			    overhead->parts[i].octets);
+	return octets;
+}
+
+struct fraction
+path_offload_segments(const struct path_segment *segment)
+{
+	struct fraction octets = path_stream_octets(segment), merged;
+
+	if (octets.num == 0)
+		return segment->segments_per_ack;
+	merged = fraction_whole(fraction_floor(fraction_divide(
+	    fraction_whole(OFFLOAD_BYTES), octets)));
+	if (fraction_compare(merged,
+	    fraction_whole(SEGMENTS_PER_ACK_MOST)) > 0)
+		merged = fraction_whole(SEGMENTS_PER_ACK_MOST);
+	return fraction_compare(merged, segment->segments_per_ack) > 0 ?
+	    merged : segment->segments_per_ack;
+}
+
+bool
+path_counted_segments(uint64_t data_segments, uint64_t acks,
+    struct fraction *segments_per_ack)
+{
+	uint64_t thousandths;
+
+	if (data_segments == 0 || data_segments == UNKNOWN_U64 || acks == 0 ||
+	    acks == UNKNOWN_U64)
+		return false;
+	thousandths = scale_u64(data_segments, THOUSANDTHS, acks);
+	if (thousandths == 0)
+		thousandths = 1;
+	if (thousandths > SEGMENTS_PER_ACK_MOST * THOUSANDTHS)
+		thousandths = SEGMENTS_PER_ACK_MOST * THOUSANDTHS;
+	*segments_per_ack = fraction_make(thousandths, THOUSANDTHS);
+	return true;
 }
 
 struct fraction

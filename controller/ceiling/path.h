@@ -27,6 +27,9 @@ struct load {
 	bool both;			/* the other direction does the same */
 	/* Segments that one acknowledgement answers; num 0: as declared. */
 	struct fraction segments_per_ack;
+	/* Where both carry data: packets of the other direction for one of
+	 * this; num 0: as many as both ceilings allow at once. */
+	struct fraction other_packets;
 };
 
 struct path_segment {
@@ -34,7 +37,9 @@ struct path_segment {
 	struct medium_capacity capacity;
 	enum accuracy accuracy;		/* the worst of medium and layers */
 	bool reference;			/* nothing of capacity is set */
-	struct fraction acks_per_packet;	/* 0 where none are sent */
+	struct fraction segments_per_ack;	/* 0 where none are sent */
+	struct fraction acks_per_packet;	/* on the line, of either
+						 * direction; else 0 */
 	bool acks_on_line, acks_in_contract;
 	/* Of the line to this direction of this circuit: after contention and
 	 * what the other direction takes of a shared line. */
@@ -48,6 +53,20 @@ int path_segment_make(const struct circuit *circuit, size_t i,
 /* The stack of segment i under the load. */
 void path_stack(const struct circuit *circuit, size_t i,
     const struct load *load, struct layer_stack *out);
+
+/* Octets of the transport's stream, which windows count, in one packet: the
+ * payload and what lies above the transport.  0: it acknowledges nothing. */
+struct fraction path_stream_octets(const struct path_segment *segment);
+/* Segments that one acknowledgement answers where the receiver's host gives
+ * 64 KiB at a time to its TCP: floor(65535 / octets of the stream), not fewer
+ * than declared. */
+struct fraction path_offload_segments(const struct path_segment *segment);
+/* From TCP's counters: data segments received and acknowledgements without
+ * data sent.  In thousandths, 0.001 to SEGMENTS_PER_ACK_MOST, so that fractions
+ * stay small.  False: one of them is 0 or UNKNOWN_U64. */
+bool path_counted_segments(uint64_t data_segments, uint64_t acks,
+    struct fraction *segments_per_ack);
+#define SEGMENTS_PER_ACK_MOST 1000
 
 /* bit/s that the layers of this direction get. */
 struct fraction path_offered_bps(const struct path_segment *segment);

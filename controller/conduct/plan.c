@@ -4,63 +4,35 @@
 #include <stdio.h>
 #include <string.h>
 
-#include "units.h"
+#include "ceiling/window.h"
 
-#define NS_PER_S UINT64_C(1000000000)
-/* RFC 6928 section 2: min(10 MSS, max(2 MSS, 14600)) */
-#define INITIAL_WINDOW_SEGMENTS 10
-#define INITIAL_WINDOW_SEGMENTS_LEAST 2
-#define INITIAL_WINDOW_BYTES 14600
 #define PAYLOAD_PERIOD_BYTES (UINT64_C(16) << 20)
 /* Within one machine nothing on the way can compress or deduplicate, and a
  * payload that fits the cache measures the transfer, not the memory. */
 #define PAYLOAD_PERIOD_REFERENCE_BYTES (UINT64_C(1) << 20)
 
-static uint64_t
-product_bytes(uint64_t rate_bps, uint64_t round_trip_ns)
-{
-	return scale_u64(rate_bps, round_trip_ns, 8 * NS_PER_S);
-}
-
 uint64_t
 plan_streams(uint64_t rate_bps, uint64_t round_trip_ns, uint64_t window_bytes)
 {
-	uint64_t bytes = product_bytes(rate_bps, round_trip_ns);
 	uint64_t streams;
 
-	if (window_bytes == 0 || bytes <= window_bytes)
+	if (window_bytes == 0)
 		return 1;
-	streams = bytes / window_bytes + (bytes % window_bytes != 0);
+	streams = window_streams(window_needed_bytes(rate_bps, round_trip_ns),
+	    window_bytes);
 	return streams < TRIAL_STREAMS_MAX ? streams : TRIAL_STREAMS_MAX;
-}
-
-static uint64_t
-initial_window_bytes(uint64_t mss_bytes)
-{
-	uint64_t most = INITIAL_WINDOW_SEGMENTS * mss_bytes;
-	uint64_t least = INITIAL_WINDOW_SEGMENTS_LEAST * mss_bytes;
-
-	if (least < INITIAL_WINDOW_BYTES)
-		least = INITIAL_WINDOW_BYTES;
-	return most < least ? most : least;
 }
 
 uint64_t
 plan_ramp_ns(uint64_t rate_bps, uint64_t round_trip_ns, uint64_t mss_bytes)
 {
-	uint64_t window_bytes = initial_window_bytes(mss_bytes);
-	uint64_t bytes = product_bytes(rate_bps, round_trip_ns);
-	uint64_t ramp_ns = 0;
+	struct ramp ramp;
 
-	if (window_bytes == 0)
+	if (mss_bytes == 0)
 		return 0;
-	for (; window_bytes < bytes && ramp_ns < TRIAL_SETTLE_MAX_NS;
-	    window_bytes *= 2) {
-		if (round_trip_ns > TRIAL_SETTLE_MAX_NS)
-			return TRIAL_SETTLE_MAX_NS;
-		ramp_ns += round_trip_ns;
-	}
-	return ramp_ns < TRIAL_SETTLE_MAX_NS ? ramp_ns : TRIAL_SETTLE_MAX_NS;
+	window_ramp(rate_bps, round_trip_ns, window_initial_bytes(mss_bytes),
+	    &ramp);
+	return ramp.ns < TRIAL_SETTLE_MAX_NS ? ramp.ns : TRIAL_SETTLE_MAX_NS;
 }
 
 /* Up to a whole row, or down where that would be too long. */
@@ -90,8 +62,8 @@ plan_settle_ns(uint64_t stated_ns, uint64_t ramp_ns, uint64_t round_trip_ns,
 	if (ramp_ns + 10 * round_trip_ns > settle_ns)
 		settle_ns = ramp_ns + 10 * round_trip_ns;
 	if (burst_bytes != 0 && line_bps > contract_bps)
-		drain_ns = scale_u64(burst_bytes, 8 * NS_PER_S,
-		    line_bps - contract_bps);
+		drain_ns = bucket_lasts_ns(burst_bytes, contract_bps,
+		    line_bps);
 	if (drain_ns > settle_ns)
 		settle_ns = drain_ns;
 	return whole_rows(settle_ns, row_ns);

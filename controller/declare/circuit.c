@@ -44,9 +44,12 @@ circuit_mtu(const struct circuit *circuit)
 uint64_t
 service_rate(const struct service *service, enum direction direction)
 {
-	if (service->committed_bps[direction] != FIELD_UNSET)
+	if (service->committed_bps[direction] == FIELD_UNSET)
+		return service->peak_bps[direction];
+	if (service->excess_bps[direction] == FIELD_UNSET)
 		return service->committed_bps[direction];
-	return service->peak_bps[direction];
+	return service->committed_bps[direction] +
+	    service->excess_bps[direction];
 }
 
 bool
@@ -89,15 +92,18 @@ check_forms(const struct node *root, struct error *err)
 }
 
 static int
-refuse_lowest(const struct medium *medium, const struct layer_use *lowest,
+refuse_lowest(const struct medium_use *use, const struct layer_use *lowest,
     struct error *err)
 {
+	const struct medium *medium = use->medium;
 	char allowed[256] = "";
 	size_t i, used = 0;
 
 	for (i = 0; medium->carries[i] != NULL; i++) {
+		if (!medium_use_carries(use, medium->carries[i]))
+			continue;
 		(void)snprintf(allowed + used, sizeof(allowed) - used, "%s%s",
-		    i == 0 ? "" : medium->carries[i + 1] == NULL ? " or " :
+		    used == 0 ? "" : medium->carries[i + 1] == NULL ? " or " :
 		    ", ", medium->carries[i]);
 		used += strlen(allowed + used);
 	}
@@ -123,8 +129,8 @@ settle_segment(struct segment *segment, const struct layer_stack *inherited,
 		return node_error(node, err, "layers: missing, allowed: a "
 		    "list, lowest first, such as [ ethernet, ipv4, tcp ]");
 	lowest = &segment->layers.use[0];
-	if (!medium_carries(medium, lowest->layer->name))
-		return refuse_lowest(medium, lowest, err);
+	if (!medium_use_carries(&segment->medium, lowest->layer->name))
+		return refuse_lowest(&segment->medium, lowest, err);
 	if (medium->bare_frames)
 		layers_settle_bare(&segment->layers);
 	if (segment->mtu_bytes == FIELD_UNSET)
@@ -139,9 +145,41 @@ settle_segment(struct segment *segment, const struct layer_stack *inherited,
 		    segment->layers.use[layers_lowest_packet(
 		    &segment->layers)].layer->name,
 		    (unsigned long long)min_bytes);
+	if (layers_check_fit(&segment->layers, segment->mtu_bytes, err) == -1)
+		return -1;
 	if (segment->exclusive == 1 && segment->shared_with_count > 0)
 		return node_error(place(node, "exclusive"), err, "exclusive: "
 		    "the segment is shared with another circuit");
+	return 0;
+}
+
+static int
+check_service_rates(const struct service *service, const struct node *node,
+    struct error *err)
+{
+	enum direction d;
+
+	for (d = 0; d < DIRECTIONS_SINGLE; d++) {
+		if (service->committed_bps[d] != FIELD_UNSET &&
+		    service->peak_bps[d] < service->committed_bps[d])
+			return node_error(place(node, "peak"), err,
+			    "peak: %s: below the committed rate",
+			    direction_name(d));
+		if (service->excess_bps[d] == FIELD_UNSET)
+			continue;
+		if (service->committed_bps[d] == FIELD_UNSET)
+			return node_error(place(node, "excess"), err,
+			    "excess: %s: `committed` is missing, allowed: "
+			    "beside a committed rate", direction_name(d));
+		if (service->peak_bps[d] != FIELD_UNSET)
+			return node_error(place(node, "excess"), err,
+			    "excess: %s: `peak` is given too, allowed: one of "
+			    "them", direction_name(d));
+		if (service_rate(service, d) > RATE_MAX_BPS)
+			return node_error(place(node, "excess"), err,
+			    "excess: %s: with the committed rate more than "
+			    "1.6 Tbit/s", direction_name(d));
+	}
 	return 0;
 }
 
@@ -150,8 +188,6 @@ static int
 settle_service(struct service *service, const struct layer_stack *layers,
     const struct node *node, struct error *err)
 {
-	enum direction d;
-
 	if (service->counted_at == FIELD_UNSET)
 		service->counted_at = layers_have_level(layers, LEVEL_FRAME) ?
 		    LEVEL_FRAME : LEVEL_PACKET;
@@ -159,13 +195,7 @@ settle_service(struct service *service, const struct layer_stack *layers,
 		return node_error(place(node, "counted-at"), err,
 		    "counted-at: the layers have no frames, allowed: line, "
 		    "packet, segment, payload");
-	for (d = 0; d < DIRECTIONS_SINGLE; d++)
-		if (service->committed_bps[d] != FIELD_UNSET &&
-		    service->peak_bps[d] < service->committed_bps[d])
-			return node_error(place(node, "peak"), err,
-			    "peak: %s: below the committed rate",
-			    direction_name(d));
-	return 0;
+	return check_service_rates(service, node, err);
 }
 
 /* The i-th item of the list, or the mapping itself in the short form. */
@@ -314,6 +344,8 @@ read_root(const struct node *root, struct draft *draft, struct error *err)
 	    err) == -1 ||
 	    settle_segments(draft, root, err) == -1 ||
 	    settle_services(draft, root, err) == -1 ||
+	    conditions_check(&circuit->conditions,
+	    node_child(root, "conditions"), err) == -1 ||
 	    check_plan(&circuit->plan, root, err) == -1)
 		return -1;
 	if (circuit->ends_declared && ends_check_version(circuit,
@@ -326,22 +358,15 @@ read_root(const struct node *root, struct draft *draft, struct error *err)
 	return 0;
 }
 
-/* Takes root. */
-static int
-circuit_from_tree(struct node *root, const char *const overrides[],
-    size_t overrides_count, struct circuit **out, struct error *err)
+int
+circuit_read_tree(const struct node *root, struct circuit **out,
+    struct error *err)
 {
-	struct draft *draft = NULL;
+	struct draft *draft = calloc(1, sizeof(*draft));
 	int rc = -1;
 
-	for (size_t i = 0; i < overrides_count; i++)
-		if (document_override(root, overrides[i], err) == -1)
-			goto out;
-	draft = calloc(1, sizeof(*draft));
-	if (draft == NULL) {
-		(void)error_errno(err, ERROR_INTERNAL, "declaration");
-		goto out;
-	}
+	if (draft == NULL)
+		return error_errno(err, ERROR_INTERNAL, "declaration");
 	if (read_root(root, draft, err) == -1)
 		goto out;
 	*out = malloc(sizeof(**out));
@@ -353,6 +378,20 @@ circuit_from_tree(struct node *root, const char *const overrides[],
 	rc = 0;
 out:
 	free(draft);
+	return rc;
+}
+
+/* Takes root. */
+static int
+circuit_from_tree(struct node *root, const char *const overrides[],
+    size_t overrides_count, struct circuit **out, struct error *err)
+{
+	int rc = 0;
+
+	for (size_t i = 0; i < overrides_count && rc == 0; i++)
+		rc = document_override(root, overrides[i], err);
+	if (rc == 0)
+		rc = circuit_read_tree(root, out, err);
 	document_free(root);
 	return rc;
 }

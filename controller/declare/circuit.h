@@ -46,6 +46,7 @@ struct end_declaration {
 struct service {
 	char name[CIRCUIT_NAME_SIZE];
 	uint64_t committed_bps[DIRECTIONS_SINGLE];	/* FIELD_UNSET */
+	uint64_t excess_bps[DIRECTIONS_SINGLE];		/* FIELD_UNSET */
 	uint64_t peak_bps[DIRECTIONS_SINGLE];		/* FIELD_UNSET */
 	uint64_t counted_at;		/* enum layer_level, resolved */
 	uint64_t burst_bytes[DIRECTIONS_SINGLE];	/* FIELD_UNSET */
@@ -84,6 +85,20 @@ struct segment {
 	uint64_t exclusive;		/* 1: carries no other; FIELD_UNSET */
 };
 
+/* What the circuit is used under: it explains a shortfall and never lowers a
+ * ceiling.  FIELD_UNSET or NAN where not declared. */
+struct conditions {
+	uint64_t round_trip_ns;
+	double loss_ratio[DIRECTIONS_SINGLE];		/* of packets */
+	double bit_error_ratio[DIRECTIONS_SINGLE];
+	/* The smaller of send buffer and receive window, each stream. */
+	uint64_t window_bytes[DIRECTIONS_SINGLE];
+	uint64_t host_bps[DIRECTIONS_SINGLE];	/* payload, any one direction */
+	/* Of a test that begins cold, with a full bucket. */
+	uint64_t test_length_ns;
+	uint64_t transfer_bytes;
+};
+
 /* How trials are to be run; every value has a default. */
 struct plan_declaration {
 	uint64_t trials;		/* a direction */
@@ -111,6 +126,7 @@ struct circuit {
 	struct service services[SERVICES_MAX];
 	size_t services_count;
 	struct criteria criteria;
+	struct conditions conditions;
 	struct plan_declaration plan;
 };
 
@@ -121,6 +137,9 @@ int circuit_read_file(const char *path, const char *const overrides[],
 int circuit_read_text(const char *text, size_t size, const char *origin,
     const char *const overrides[], size_t overrides_count,
     struct circuit **out, struct error *err);
+/* The same of a tree, which is borrowed. */
+int circuit_read_tree(const struct node *root, struct circuit **out,
+    struct error *err);
 void circuit_free(struct circuit *circuit);	/* NULL is fine */
 
 /* True where the only medium is a reference (host). */
@@ -129,7 +148,8 @@ bool circuit_is_reference(const struct circuit *circuit);
 uint64_t circuit_mtu(const struct circuit *circuit);
 /* True where the service states a rate in this direction. */
 bool service_has_rate(const struct service *service, enum direction direction);
-/* The committed rate, or the peak rate where only that is declared. */
+/* The committed rate with the excess rate, or the peak rate where only that is
+ * declared. */
 uint64_t service_rate(const struct service *service, enum direction direction);
 
 /* For help and tests; the offsets are those of a private struct. */

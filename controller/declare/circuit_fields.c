@@ -93,6 +93,10 @@ const struct field service_fields[] = {
 	{ ROW_QUANTITY(struct service, "committed", RATE, committed_bps),
 	  .min = 1, .max = RATE_MAX_BPS, .per_direction = true,
 	  .help = "the rate that the contract guarantees" },
+	{ ROW_QUANTITY(struct service, "excess", RATE, excess_bps),
+	  .min = 1, .max = RATE_MAX_BPS, .per_direction = true,
+	  .help = "what the contract lets through beside the committed rate "
+		  "without a guarantee (RFC 4115)" },
 	{ ROW_QUANTITY(struct service, "peak", RATE, peak_bps),
 	  .min = 1, .max = RATE_MAX_BPS, .per_direction = true,
 	  .help = "the rate that the contract allows at most; a bound only "
@@ -139,11 +143,11 @@ static const struct field segment_fields[] = {
 	{ ROW_TEXT(struct segment, "name", name), .required = true,
 	  .help = "its name" },
 	{ ROW(struct segment, "medium", FIELD_CUSTOM, medium),
-	  .read = medium_read, .help = "{ kind: NAME, ... }: see "
-	      "`plafond media`" },
+	  .read = medium_read, .rows_of = medium_rows_of,
+	  .help = "{ kind: NAME, ... }: see `plafond media`" },
 	{ ROW(struct segment, "layers", FIELD_CUSTOM, layers),
-	  .read = layers_read, .help = "its layers, lowest first; default: "
-	      "those of the circuit" },
+	  .read = layers_read, .rows_of = layers_rows_of,
+	  .help = "its layers, lowest first; default: those of the circuit" },
 	MTU_ROW(struct segment, mtu_bytes),
 	{ ROW(struct segment, "service", FIELD_MAPPING, service),
 	  .fields = service_fields, .help = "a contract of this segment" },
@@ -168,6 +172,36 @@ static const struct field criteria_fields[] = {
 	{ ROW_QUANTITY(struct criteria, "delay-variation", TIME,
 	  delay_variation_ns), .per_direction = true,
 	  .help = "largest variation of the delay (RFC 5481)" },
+	{ .name = NULL },
+};
+
+#define ROUND_TRIP_MAX_NS UINT64_C(60000000000)	/* a minute */
+#define TEST_LENGTH_MAX_NS UINT64_C(2592000000000000)	/* 30 days */
+/* 65535 << 14, the largest window of RFC 7323 s2.3. */
+#define WINDOW_MAX_BYTES (UINT64_C(65535) << 14)
+
+static const struct field conditions_fields[] = {
+	{ ROW_QUANTITY(struct conditions, "round-trip", TIME, round_trip_ns),
+	  .min = 1000, .max = ROUND_TRIP_MAX_NS,
+	  .help = "round-trip time of the idle circuit" },
+	{ ROW_RATIO(struct conditions, "loss", loss_ratio),
+	  .help = "share of packets lost; needs round-trip" },
+	{ ROW_RATIO(struct conditions, "bit-error-ratio", bit_error_ratio),
+	  .help = "share of bits received wrong, in place of loss: a frame "
+		  "with one is lost (RFC 3819 s8.5.3)" },
+	{ ROW_QUANTITY(struct conditions, "window", SIZE, window_bytes),
+	  .min = 1, .max = WINDOW_MAX_BYTES, .per_direction = true,
+	  .help = "the smaller of send buffer and receive window of one "
+		  "stream; needs round-trip" },
+	{ ROW_QUANTITY(struct conditions, "host", RATE, host_bps), .min = 1,
+	  .max = RATE_MAX_BPS, .per_direction = true,
+	  .help = "payload that the hosts at the ends can do" },
+	{ ROW_QUANTITY(struct conditions, "test-length", TIME,
+	  test_length_ns), .min = 1000000, .max = TEST_LENGTH_MAX_NS,
+	  .help = "length of a test that begins cold and with a full bucket" },
+	{ ROW_QUANTITY(struct conditions, "transfer-size", SIZE,
+	  transfer_bytes), .min = 1, .max = UINT64_C(1) << 50,
+	  .help = "size of a file whose transfer time is wanted" },
 	{ .name = NULL },
 };
 
@@ -228,11 +262,11 @@ const struct field circuit_fields[] = {
 	  .read = ends_read, .fields = ends_fields,
 	  .help = "{ a: ..., b: ... }: the agents; `ceiling` needs none" },
 	{ ROW(struct draft, "medium", FIELD_CUSTOM, short_form.medium),
-	  .read = medium_read, .help = "{ kind: NAME, ... }: see "
-	      "`plafond media`" },
+	  .read = medium_read, .rows_of = medium_rows_of,
+	  .help = "{ kind: NAME, ... }: see `plafond media`" },
 	{ ROW(struct draft, "layers", FIELD_CUSTOM, short_form.layers),
-	  .read = layers_read, .help = "list of layers, lowest first: see "
-	      "`plafond layers`" },
+	  .read = layers_read, .rows_of = layers_rows_of,
+	  .help = "list of layers, lowest first: see `plafond layers`" },
 	MTU_ROW(struct draft, short_form.mtu_bytes),
 	DEVICE_ROW(struct draft, short_form.device),
 	{ ROW(struct draft, "service", FIELD_MAPPING, service),
@@ -249,6 +283,9 @@ const struct field circuit_fields[] = {
 	  .help = "list from a to b, in place of medium, mtu and service" },
 	{ ROW(struct draft, "criteria", FIELD_MAPPING, circuit.criteria),
 	  .fields = criteria_fields, .help = "what the circuit must meet" },
+	{ ROW(struct draft, "conditions", FIELD_MAPPING, circuit.conditions),
+	  .fields = conditions_fields, .help = "round trip, loss, window: what "
+	      "explains a shortfall and never lowers a ceiling" },
 	{ ROW(struct draft, "plan", FIELD_MAPPING, circuit.plan),
 	  .fields = plan_fields, .help = "how trials are run" },
 	{ .name = NULL },

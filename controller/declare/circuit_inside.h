@@ -17,4 +17,9 @@ struct draft {
 
 extern const struct field service_fields[];
 
+/* What contradicts itself under `conditions`; node NULL: nothing is declared
+ * there.  -1: placed with node_error. */
+int conditions_check(const struct conditions *conditions,
+    const struct node *node, struct error *err);
+
 #endif

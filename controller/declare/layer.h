@@ -35,14 +35,37 @@ const char *level_name(enum layer_level level);
 extern const struct choice level_choices[];	/* for counted-at */
 
 /* Options that a declaration can give to a layer; each row's fields point into
- * this struct and the rest stays at 0. */
+ * this struct and the rest stays at 0.  FIELD_UNSET: not declared. */
 struct layer_options {
+	uint64_t fcs;			/* ethernet on AAL5, gfp: 0 or 1 */
+	uint64_t sci, icv_bytes;	/* macsec */
+	uint64_t labels;		/* mpls */
+	uint64_t control_word;		/* pseudowire */
+	uint64_t address_control;	/* ppp on l2tp */
+	uint64_t fcs_bytes, stuffing, flags;	/* hdlc, frame-relay */
+	uint64_t downstream_header_bytes;	/* docsis: extended header */
+	uint64_t upstream_header_bytes;
+	uint64_t qos, encryption;	/* wlan */
+	uint64_t mac_bytes, rlc_bytes, pdcp_bytes, sdap;	/* lte, nr */
+	uint64_t mtu_bytes;		/* ipv4, ipv6, wireguard */
+	uint64_t options_bytes;		/* ipv4, tcp, geneve; ipv6: extension
+					 * headers */
 	uint64_t timestamps;		/* tcp: 0 or 1 */
-	uint64_t options_bytes;		/* ipv4, tcp: further header options */
+	uint64_t mss_bytes;		/* tcp */
 	uint64_t segments_per_ack;	/* tcp */
-	uint64_t version;		/* tls: 12, 13 */
-	uint64_t cipher;		/* tls: row of the cipher's overhead */
+	uint64_t datagram_bytes;	/* udp */
+	uint64_t checksum, key;		/* gre */
+	uint64_t sequence;		/* gre, l2tp: 0 or 1 */
+	uint64_t length;		/* l2tp, dtls: 0 or 1 */
+	uint64_t offset_bytes;		/* l2tp, quic */
+	uint64_t cookie_bytes, sublayer;	/* l2tpv3 */
+	uint64_t cipher, integrity;	/* esp, tls, dtls */
+	uint64_t version;		/* tls, dtls */
+	uint64_t encrypt_then_mac;	/* tls */
 	uint64_t record_bytes;		/* tls: plaintext a record */
+	uint64_t connection_id_bytes;	/* dtls, quic */
+	uint64_t sequence_bytes;	/* dtls, quic: packet number */
+	uint64_t stream_id_bytes, length_bytes;	/* quic */
 };
 
 /* len = head + roundup(len + trail, align) + tail; at least min; plus before
@@ -72,12 +95,15 @@ struct layer {
 	enum layer_level level;
 	/* Names; "": a medium with its own gap between frames, "bare": one
 	 * without.  Several rows may have one name and differ by what lies
-	 * below; no two of them by the same. */
+	 * below; no two of them lie on the same. */
 	const char *const *below;
 	uint64_t default_mtu_bytes;	/* what it lets through; 0: no say */
 	uint64_t min_mtu_bytes;		/* an IP layer's least MTU, else 0 */
 	unsigned ip_version;		/* 4, 6, or 0 */
 	bool acknowledged;		/* bare headers come back */
+	/* Option that declares limit_bytes, which must fit; NULL: where less
+	 * room is left, that room counts. */
+	const char *limit_option;
 	struct layer_cost cost;		/* without options */
 	/* Adds what the options cost; NULL where there are none.  -1: the
 	 * options do not go together. */
@@ -94,8 +120,12 @@ struct layer {
 					 * Such a row is never exact */
 };
 
-extern const struct layer layer_table[];	/* ends with name NULL */
+/* Every row, in the order of `plafond layers`; NULL ends it.  Rows of one name
+ * follow each other. */
+extern const struct layer *const layer_table[];
 const struct layer *layer_find(const char *name);	/* the first */
+/* The next row of the same name; NULL: that was the last. */
+const struct layer *layer_next_variant(const struct layer *layer);
 /* The row of that name that lies on `below`; NULL: none. */
 const struct layer *layer_find_on(const char *name, const char *below);
 

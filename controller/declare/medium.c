@@ -28,6 +28,12 @@ const struct choice medium_ends[] = {
 	{ NULL, 0 },
 };
 
+const struct choice medium_duplexes[] = {
+	{ "full", DUPLEX_FULL },
+	{ "half", DUPLEX_SHARED },
+	{ NULL, 0 },
+};
+
 const char *
 duplex_name(enum duplex duplex)
 {
@@ -55,6 +61,14 @@ medium_carries(const struct medium *medium, const char *layer_name)
 		if (strcmp(*name, layer_name) == 0)
 			return true;
 	return false;
+}
+
+bool
+medium_use_carries(const struct medium_use *use, const char *layer_name)
+{
+	return medium_carries(use->medium, layer_name) &&
+	    (use->medium->suits == NULL ||
+	    use->medium->suits(&use->parameters, layer_name));
 }
 
 bool
@@ -118,6 +132,25 @@ medium_read(const struct node *node, const struct field *field, void *base,
 	if (use->medium->check == NULL)
 		return 0;
 	return use->medium->check(&use->parameters, node, err);
+}
+
+int
+medium_rows_of(const struct node *node, const char **key,
+    const struct field **rows, struct error *err)
+{
+	const struct medium *medium = NULL;
+	const struct node *kind = node;
+
+	(void)key;
+	if (node != NULL && node->kind == NODE_MAPPING)
+		kind = node_child(node, "kind");
+	if (kind != NULL && kind->kind == NODE_SCALAR)
+		medium = medium_find(kind->text);
+	if (medium == NULL)
+		return error_set(err, ERROR_USAGE, "medium: its kind is not "
+		    "declared or not known; `plafond media` lists them");
+	*rows = medium->fields;
+	return 0;
 }
 
 const struct node *

@@ -98,6 +98,8 @@ struct medium {
 	int (*capacity)(const void *parameters, const struct medium_load *load,
 	    struct medium_capacity *out, struct error *err);
 	const char *const *carries;	/* what the lowest layer may be */
+	/* Of these, does this one go with the parameters?  NULL: each does. */
+	bool (*suits)(const void *parameters, const char *layer_name);
 	bool bare_frames;	/* Ethernet frames lie on it without preamble
 				 * and gap */
 	uint64_t default_mtu_bytes;	/* where no layer has a say; else 0 */
@@ -127,8 +129,13 @@ struct medium_use {
  * leaves it without a medium. */
 int medium_read(const struct node *node, const struct field *field, void *base,
     struct error *err);
+/* rows_of of such a field: those of the declared kind. */
+int medium_rows_of(const struct node *node, const char **key,
+    const struct field **rows, struct error *err);
 /* May this layer be the lowest on the medium? */
 bool medium_carries(const struct medium *medium, const char *layer_name);
+/* The same with the parameters as declared. */
+bool medium_use_carries(const struct medium_use *use, const char *layer_name);
 bool medium_is_reference(const struct medium *medium);
 /* Away from the subscriber; false where the medium has none. */
 bool medium_upstream(const struct medium_use *use, enum direction direction);
@@ -152,6 +159,12 @@ int medium_kind_read(const struct node *node, const struct field *field,
 extern const struct choice medium_ends[];	/* enum end */
 /* True where the direction leads away from the subscriber. */
 bool medium_is_upstream(uint64_t subscriber, enum direction direction);
+/* `duplex: half`; uint64_t member, enum duplex. */
+#define MEDIUM_DUPLEX_ROW(type, member, text)				\
+	{ .name = "duplex", .kind = FIELD_CHOICE,			\
+	  .offset = offsetof(type, member), .choices = medium_duplexes,	\
+	  .default_text = "full", .help = text }
+extern const struct choice medium_duplexes[];
 /* `contention: 32`; uint64_t member. */
 #define MEDIUM_CONTENTION_ROW(type, member)				\
 	{ .name = "contention", .kind = FIELD_COUNT,			\

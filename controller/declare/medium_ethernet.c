@@ -62,12 +62,6 @@ static const struct choice phy_choices[] = {
 static_assert(sizeof(phy_choices) / sizeof(phy_choices[0]) == PHYS + 1,
     "a choice for every row");
 
-static const struct choice duplex_choices[] = {
-	{ "full", DUPLEX_FULL },
-	{ "half", DUPLEX_SHARED },
-	{ NULL, 0 },
-};
-
 static const struct field fields[] = {
 	MEDIUM_KIND_ROW,
 	{ .name = "line-rate", .kind = FIELD_QUANTITY,
@@ -78,11 +72,8 @@ static const struct field fields[] = {
 	{ .name = "phy", .kind = FIELD_CHOICE,
 	  .offset = offsetof(struct parameters, phy), .choices = phy_choices,
 	  .help = "its physical layer, in place of line-rate or beside it" },
-	{ .name = "duplex", .kind = FIELD_CHOICE,
-	  .offset = offsetof(struct parameters, duplex),
-	  .choices = duplex_choices, .default_text = "full",
-	  .help = "half: both directions share the line, collisions are not "
-		  "counted" },
+	MEDIUM_DUPLEX_ROW(struct parameters, duplex, "half: both directions "
+	    "share the line, collisions are not counted"),
 	{ .name = NULL },
 };
 

@@ -209,8 +209,8 @@ layers_settle_bare(struct layer_stack *stack)
 	(void)rc;
 }
 
-static void
-use_default(struct layer_use *use, const struct layer *layer)
+void
+layer_use_default(struct layer_use *use, const struct layer *layer)
 {
 	struct error err;
 	int rc;
@@ -240,7 +240,7 @@ layers_with_protocol(const struct layer_stack *stack, enum protocol protocol,
 		const struct layer *layer = layer_find(names[n]);
 
 		assert(layer != NULL && out->count < LAYERS_MAX);
-		use_default(&out->use[out->count], layer);
+		layer_use_default(&out->use[out->count], layer);
 		for (i = transport; i < stack->count; i++)
 			if (stack->use[i].layer == layer)
 				out->use[out->count] = stack->use[i];
@@ -276,9 +276,9 @@ find_on(const struct layer_stack *stack, const char *name,
 	*out = layer_find_on(name, found);
 	if (*out != NULL)
 		return 0;
-	for (layer = layer_table; layer->name != NULL; layer++)
-		for (i = 0; strcmp(layer->name, name) == 0 &&
-		    layer->below[i] != NULL; i++)
+	for (layer = layer_find(name); layer != NULL;
+	    layer = layer_next_variant(layer))
+		for (i = 0; layer->below[i] != NULL; i++)
 			if (strcmp(layer->below[i], "bare") != 0 &&
 			    count < NAMES_MAX - 1)
 				below[count++] = layer->below[i];
@@ -291,14 +291,12 @@ static int
 unknown_layer(const struct node *node, const char *name, struct error *err)
 {
 	const char *names[NAMES_MAX], *nearest;
-	const struct layer *layer;
 	char allowed[800] = "", found[64];
-	size_t count = 0;
+	size_t count = 0, i;
 
-	for (layer = layer_table; layer->name != NULL &&
-	    count < NAMES_MAX - 1; layer++)
-		if (layer_find(layer->name) == layer)
-			names[count++] = layer->name;
+	for (i = 0; layer_table[i] != NULL && count < NAMES_MAX - 1; i++)
+		if (layer_find(layer_table[i]->name) == layer_table[i])
+			names[count++] = layer_table[i]->name;
 	names[count] = NULL;
 	nearest = nearest_name(name, names, count);
 	append_names(allowed, sizeof(allowed), names);
@@ -308,6 +306,20 @@ unknown_layer(const struct node *node, const char *name, struct error *err)
 		    "'%s'? allowed: %s", found, nearest, allowed);
 	return node_error(node, err, "layers: found '%s', allowed: %s", found,
 	    allowed);
+}
+
+/* Where a refusal of options belongs: its words begin with the option's name,
+ * or else it is about them all. */
+static const struct node *
+option_place(const struct node *options, const char *cause)
+{
+	char name[64];
+	const struct node *child;
+
+	(void)snprintf(name, sizeof(name), "%.*s", (int)strcspn(cause, ":"),
+	    cause);
+	child = node_child(options, name);
+	return child != NULL ? child : options;
 }
 
 /* One item: a name, or a mapping of one name to its options. */
@@ -340,14 +352,29 @@ read_use(const struct node *item, struct layer_stack *stack,
 		    name);
 	memset(use, 0, sizeof(*use));
 	use->layer = layer;
-	use->at = item;
+	use->at = options != NULL ? options : item;
 	if (layer->fields != NULL && fields_read(options, layer->fields,
 	    layer->name, &use->options, err) == -1)
 		return -1;
 	if (use_adjust(use, &cause) == -1)
-		return node_error(item, err, "%s: %s", name, cause.cause);
+		return node_error(option_place(use->at, cause.cause), err,
+		    "%s: %s", name, cause.cause);
 	stack->count++;
 	return 0;
+}
+
+/* The circuit's mtu is that of the lowest IP layer. */
+static int
+check_lowest_mtu(const struct layer_stack *stack, struct error *err)
+{
+	const struct layer_use *use;
+
+	use = &stack->use[layers_lowest_packet(stack)];
+	if (use->options.mtu_bytes == FIELD_UNSET)
+		return 0;
+	return node_error(node_child(use->at, "mtu"), err, "%s: mtu: found on "
+	    "the lowest IP layer, allowed: on one inside a tunnel; this "
+	    "one's is the mtu of the circuit or segment", use->layer->name);
 }
 
 /* A trial needs a packet to fill and a transport to fill it: what lies above
@@ -357,18 +384,16 @@ check_top(const struct layer_stack *stack, const struct node *node,
     struct error *err)
 {
 	const char *names[NAMES_MAX];
-	const struct layer *layer;
 	char allowed[256] = "";
-	size_t count = 0, i = stack->count;
+	size_t count = 0, i = stack->count, n;
 
 	while (i > 0 && stack->use[i - 1].layer->level == LEVEL_PAYLOAD)
 		i--;
 	if (i > 0 && stack->use[i - 1].layer->level == LEVEL_SEGMENT)
 		return 0;
-	for (layer = layer_table; layer->name != NULL &&
-	    count < NAMES_MAX - 1; layer++)
-		if (layer->level == LEVEL_SEGMENT)
-			names[count++] = layer->name;
+	for (n = 0; layer_table[n] != NULL && count < NAMES_MAX - 1; n++)
+		if (layer_table[n]->level == LEVEL_SEGMENT)
+			names[count++] = layer_table[n]->name;
 	names[count] = NULL;
 	append_names(allowed, sizeof(allowed), names);
 	return node_error(node, err, "layers: the stack has no transport%s%s, "
@@ -397,5 +422,7 @@ layers_read(const struct node *node, const struct field *field, void *base,
 		if (read_use(item, stack, err) == -1)
 			return -1;
 	}
-	return check_top(stack, node, err);
+	if (check_top(stack, node, err) == -1)
+		return -1;
+	return check_lowest_mtu(stack, err);
 }

@@ -30,6 +30,9 @@ struct layer_use {
 	const struct node *at;		/* borrowed while reading, then NULL */
 };
 
+/* The row with every option at its default. */
+void layer_use_default(struct layer_use *use, const struct layer *layer);
+
 /* CUSTOM reader of `layers: [ethernet, {tcp: {timestamps: no}}]` into a
  * struct layer_stack at field->offset; refuses impossible stacks. */
 struct layer_stack {
@@ -38,6 +41,10 @@ struct layer_stack {
 };
 int layers_read(const struct node *node, const struct field *field, void *base,
     struct error *err);
+/* rows_of of such a field: "3.tls.record-bytes" leads to the options of the
+ * layer tls, which is the item 3 of the list. */
+int layers_rows_of(const struct node *node, const char **key,
+    const struct field **rows, struct error *err);
 
 /* Index of the lowest IP layer, and of the uppermost transport: a stack that
  * was read has both. */
@@ -54,6 +61,21 @@ uint64_t layers_min_mtu(const struct layer_stack *stack);
 /* True where both are the same from the lowest IP layer upward. */
 bool layers_agree_above_frame(const struct layer_stack *left,
     const struct layer_stack *right);
+
+/* What the layers from the lowest IP layer upward can carry, up to the first
+ * layer of records or the top. */
+struct layers_room {
+	uint64_t carried_bytes;		/* by the uppermost of them */
+	size_t top;			/* index above the uppermost */
+	size_t failed;			/* index of what does not fit; on -1 */
+};
+/* In a packet of mtu_bytes.  -1 (ERROR_INPUT): no room for payload, or a
+ * packet size declared inside a tunnel does not fit. */
+int layers_fit(const struct layer_stack *stack, uint64_t mtu_bytes,
+    struct layers_room *out, struct error *err);
+/* The same check while reading: the error is placed at the layer. */
+int layers_check_fit(const struct layer_stack *stack, uint64_t mtu_bytes,
+    struct error *err);
 
 /* The lowest layer lies on a medium without a gap of its own between frames:
  * takes the row for that where there is one. */

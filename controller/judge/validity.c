@@ -194,6 +194,18 @@ allowed_bps(const struct verdict_input *input, enum direction direction)
 	return bps;
 }
 
+/* A medium's ceiling that is not exact can be too low by its own error, or by
+ * acknowledgements that the receiver left out. */
+static bool
+is_estimate(const struct ceiling *ceiling)
+{
+	const struct bound *bound = ceiling_binding(ceiling);
+
+	return bound != NULL && bound->class == BOUND_MEDIUM &&
+	    (ceiling->accuracy != ACCURACY_EXACT ||
+	    ceiling->segments_per_ack > 0);
+}
+
 static void
 check_above(const struct verdict_input *input, enum direction direction,
     struct verdict *verdict)
@@ -205,6 +217,16 @@ check_above(const struct verdict_input *input, enum direction direction,
 	    !verdict->has_achieved[direction] ||
 	    achieved_bps <= allowed_bps(input, direction))
 		return;
+	if (is_estimate(&input->ceilings[direction])) {
+		verdict_add_note(verdict, "above-estimate", "%s achieved %s, "
+		    "above its ceiling of %s, which is %s: the medium's "
+		    "parameters or the estimate are too low",
+		    direction_name(direction),
+		    rate_text((uint64_t)achieved_bps, found),
+		    rate_text(verdict_target_bps(input, direction), wanted),
+		    accuracy_name(input->ceilings[direction].accuracy));
+		return;
+	}
 	verdict_add_reason(verdict, "above-ceiling", "%s achieved %s, above "
 	    "its ceiling of %s by more than clock and burst allow: the "
 	    "declaration is wrong; usual reasons: a token bucket (`burst`), "

@@ -1,201 +1,26 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/* The text form of ceiling_report: a ladder a direction, every column of which
- * adds up as printed, then the bounds, then the other protocols. */
+/* The text form of ceiling_report: a ladder a direction, then the bounds, the
+ * other transports, what follows from the conditions, and how far to rely on
+ * it. */
 #include <inttypes.h>
 #include <string.h>
 
 #include "columns.h"
 #include "report/ceiling_report.h"
+#include "report/ladder_text.h"
+#include "report/rate_unit.h"
 
-#define CELL_SIZE 32
+#define LAYERS_TEXT_SIZE 256
 
-/* One unit for a column of rates, three digits after the point. */
-struct rate_unit {
-	uint64_t least_line_bps;	/* from this line rate on */
-	uint64_t digit_bps;		/* the last digit */
-	const char *symbol;
-};
-static const struct rate_unit rate_units[] = {
-	{ UINT64_C(100000000000), 1000000, "Gbit/s" },
-	{ 10000000, 1000, "Mbit/s" },
-	{ 0, 1, "kbit/s" },
-};
-
-static const struct rate_unit *
-unit_for(uint64_t line_rate_bps)
-{
-	const struct rate_unit *unit = rate_units;
-
-	while (line_rate_bps < unit->least_line_bps)
-		unit++;
-	return unit;
-}
-
-/* A column of the ladder in whole last digits. */
-struct ladder_column {
-	unsigned digits;		/* after the point */
-	uint64_t top;			/* the medium's line rate */
-	uint64_t levels[LEVELS];
-	uint64_t steps[LADDER_STEPS_MAX];
-};
-
-/* Sets digits, 0 to 3, of a whole number of last digits. */
-static const char *
-decimal(uint64_t value, unsigned digits, const char *sign, char buf[CELL_SIZE])
-{
-	uint64_t unit = 1;
-	unsigned i;
-
-	for (i = 0; i < digits; i++)
-		unit *= 10;
-	if (digits == 0)
-		(void)snprintf(buf, CELL_SIZE, "%s%" PRIu64, sign, value);
-	else
-		(void)snprintf(buf, CELL_SIZE, "%s%" PRIu64 ".%0*" PRIu64, sign,
-		    value / unit, (int)digits, value % unit);
-	return buf;
-}
-
-static void
-round_levels(struct ladder_column *column, const struct ceiling *ceiling,
-    const struct fraction levels[LEVELS], const struct fraction steps[])
-{
-	int level;
-
-	for (level = 0; level < LEVELS; level++)
-		column->levels[level] = fraction_floor(levels[level]);
-	ladder_round(ceiling->steps, ceiling->steps_count, steps, levels,
-	    column->steps);
-}
-
-/* Rates divided by this many bit/s: a unit's last digit, or for shares the
- * ten-thousandth part of the line rate.  Levels are rounded down, with a half
- * to the nearest. */
-static void
-fill_rates(struct ladder_column *column, const struct ceiling *ceiling,
-    struct fraction digit, struct fraction half)
-{
-	struct fraction levels[LEVELS], steps[LADDER_STEPS_MAX];
-	size_t i;
-
-	for (i = 0; i < LEVELS; i++)
-		levels[i] = fraction_add(half, fraction_divide(fraction_whole(
-		    ceiling->rate_bps[i]), digit));
-	for (i = 0; i < ceiling->steps_count; i++)
-		steps[i] = fraction_divide(fraction_whole(
-		    ceiling->steps[i].bps), digit);
-	column->top = fraction_floor(fraction_divide(fraction_whole(
-	    ceiling->line_rate_bps), digit));
-	round_levels(column, ceiling, levels, steps);
-}
-
-static void
-fill_octets(struct ladder_column *column, const struct ceiling *ceiling)
-{
-	struct fraction levels[LEVELS], steps[LADDER_STEPS_MAX];
-	uint64_t scale = 1;
-	size_t i;
-
-	column->digits = 0;
-	if (ceiling->level_bytes_den != 1) {
-		column->digits = 3;
-		scale = 1000;
-	}
-	for (i = 0; i < LEVELS; i++)
-		levels[i] = fraction_make(scale * ceiling->level_bytes_num[i],
-		    ceiling->level_bytes_den);
-	for (i = 0; i < ceiling->steps_count; i++)
-		steps[i] = fraction_make(scale * ceiling->steps[i].bytes_num,
-		    ceiling->steps[i].bytes_den);
-	round_levels(column, ceiling, levels, steps);
-}
-
-struct ladder {
-	struct ladder_column octets, rates, shares;
-};
-
-static void
-level_row(struct columns *columns, const struct ladder *ladder,
-    enum layer_level level)
-{
-	char octets[CELL_SIZE], rate[CELL_SIZE], share[CELL_SIZE];
-	const char *cells[] = { level_name(level),
-		decimal(ladder->octets.levels[level], ladder->octets.digits,
-		    "", octets),
-		decimal(ladder->rates.levels[level], ladder->rates.digits, "",
-		    rate),
-		decimal(ladder->shares.levels[level], ladder->shares.digits,
-		    "", share), "" };
-
-	columns_row(columns, cells);
-}
-
-static void
-step_row(struct columns *columns, const struct ladder *ladder,
-    const struct ladder_step *step, size_t i)
-{
-	char name[sizeof(step->name) + 4];
-	char octets[CELL_SIZE], rate[CELL_SIZE], share[CELL_SIZE];
-	const char *cells[] = { name, octets, rate, share, step->source };
-
-	(void)snprintf(name, sizeof(name), "  %s", step->name);
-	(void)decimal(ladder->octets.steps[i], ladder->octets.digits, "-",
-	    octets);
-	if (step->bytes_num == 0)
-		octets[0] = '\0';
-	(void)decimal(ladder->rates.steps[i], ladder->rates.digits, "-", rate);
-	(void)decimal(ladder->shares.steps[i], ladder->shares.digits, "-",
-	    share);
-	columns_row(columns, cells);
-}
-
-static void
-print_ladder(const struct ceiling *ceiling, const struct rate_unit *unit,
-    const char *line_source, FILE *out)
-{
-	struct columns *columns = columns_new("lrrrl");
-	struct ladder ladder;
-	char octets[CELL_SIZE] = "", rate[CELL_SIZE], share[CELL_SIZE];
-	const char *head[] = { "from the line to the payload", "B/packet",
-		unit->symbol, "% of line", "source" };
-	const char *top[] = { "line rate", octets, rate, share, line_source };
-	size_t i;
-
-	memset(&ladder, 0, sizeof(ladder));
-	fill_octets(&ladder.octets, ceiling);
-	ladder.rates.digits = 3;
-	fill_rates(&ladder.rates, ceiling, fraction_whole(unit->digit_bps),
-	    fraction_whole(0));
-	ladder.shares.digits = 2;
-	fill_rates(&ladder.shares, ceiling, fraction_make(
-	    ceiling->line_rate_bps, 10000), fraction_make(1, 2));
-	(void)decimal(ladder.rates.top, ladder.rates.digits, "", rate);
-	(void)decimal(ladder.shares.top, ladder.shares.digits, "", share);
-	columns_row(columns, head);
-	columns_rule(columns);
-	if (ceiling->unused_bps == 0) {
-		top[0] = level_name(LEVEL_LINE);
-		(void)decimal(ladder.octets.levels[LEVEL_LINE],
-		    ladder.octets.digits, "", octets);
-	}
-	columns_row(columns, top);
-	for (i = 0; i < ceiling->steps_count; i++) {
-		step_row(columns, &ladder, &ceiling->steps[i], i);
-		if (ceiling->steps[i].reaches_level)
-			level_row(columns, &ladder, ceiling->steps[i].level);
-	}
-	columns_print(columns, 0, out);
-	columns_free(columns);
-}
-
+/* What makes the ceiling. */
 static void
 print_bounds(const struct ceiling *ceiling, const struct rate_unit *unit,
     FILE *out)
 {
-	struct columns *columns = columns_new("llrll");
+	struct columns *columns = columns_new("llrlw");
 	const char *head[] = { "bound", "class", unit->symbol, "binds",
 		"source" };
-	char rate[CELL_SIZE];
+	char rate[RATE_CELL_SIZE];
 	size_t i;
 
 	columns_row(columns, head);
@@ -204,13 +29,46 @@ print_bounds(const struct ceiling *ceiling, const struct rate_unit *unit,
 		const struct bound *bound = &ceiling->bounds[i];
 		const char *cells[] = { bound->name,
 			bound_class_name(bound->class),
-			decimal(bound->payload_bps / unit->digit_bps, 3, "",
-			    rate), bound->binding ? "yes" : "",
-			bound->source };
+			rate_unit_text(unit, bound->payload_bps, rate),
+			bound->binding ? "yes" : "", bound->source };
 
-		columns_row(columns, cells);
+		if (bound->class != BOUND_CONDITION)
+			columns_row(columns, cells);
 	}
 	columns_print(columns, 0, out);
+	columns_free(columns);
+}
+
+/* What explains a shortfall. */
+static void
+print_conditions(const struct ceiling *ceiling, const struct rate_unit *unit,
+    FILE *out)
+{
+	struct columns *columns = columns_new("lrw");
+	const char *head[] = { "condition, lowers no ceiling", unit->symbol,
+		"source" };
+	char rate[RATE_CELL_SIZE], source[sizeof(ceiling->bounds[0].source) +
+	    16];
+	size_t i, count = 0;
+
+	columns_row(columns, head);
+	columns_rule(columns);
+	for (i = 0; i < ceiling->bounds_count; i++) {
+		const struct bound *bound = &ceiling->bounds[i];
+		const char *cells[] = { bound->name, rate_unit_text(unit,
+			bound->payload_bps, rate), source };
+
+		if (bound->class != BOUND_CONDITION)
+			continue;
+		(void)snprintf(source, sizeof(source), "%s%s",
+		    bound->binding ? "lowest: " : "", bound->source);
+		columns_row(columns, cells);
+		count++;
+	}
+	if (count > 0) {
+		(void)fputc('\n', out);
+		columns_print(columns, 0, out);
+	}
 	columns_free(columns);
 }
 
@@ -218,17 +76,29 @@ static void
 print_protocols(const struct ceiling_report *report, enum direction direction,
     const struct rate_unit *unit, FILE *out)
 {
-	struct columns *columns = columns_new("lr");
-	const char *head[] = { "payload of a trial over", unit->symbol };
-	char rate[CELL_SIZE];
+	const struct ceiling *ceiling = &report->ceilings[direction];
+	struct columns *columns = columns_new("lrl");
+	const char *head[] = { "payload over", unit->symbol, "" };
+	char rate[RATE_CELL_SIZE];
+	bool listed = false;
 	enum protocol p;
 
 	columns_row(columns, head);
 	columns_rule(columns);
 	for (p = 0; p < PROTOCOLS; p++) {
-		const char *cells[] = { protocol_name(p), decimal(
-			report->payload_bps[direction][p] / unit->digit_bps,
-			3, "", rate) };
+		bool declared = strcmp(protocol_name(p), ceiling->top) == 0;
+		uint64_t bps = report->payload_bps[direction][p];
+		const char *cells[] = { protocol_name(p), bps == FIELD_UNSET ?
+			"-" : rate_unit_text(unit, bps, rate), declared ?
+			"as declared" : "" };
+
+		listed = listed || declared;
+		columns_row(columns, cells);
+	}
+	if (!listed) {
+		const char *cells[] = { ceiling->top, rate_unit_text(unit,
+			ceiling->rate_bps[LEVEL_PAYLOAD], rate),
+			"as declared" };
 
 		columns_row(columns, cells);
 	}
@@ -236,55 +106,93 @@ print_protocols(const struct ceiling_report *report, enum direction direction,
 	columns_free(columns);
 }
 
-static const struct bound *
-binding_bound(const struct ceiling *ceiling)
+/* What the medium says of the line: codes, modulation, steps of a modem. */
+static void
+print_notes(const struct ceiling *ceiling, const char *medium, FILE *out)
 {
+	struct columns *columns = columns_new("lw");
+	char label[64];
 	size_t i;
 
-	for (i = 0; i < ceiling->bounds_count; i++)
-		if (ceiling->bounds[i].binding &&
-		    ceiling->bounds[i].class != BOUND_CONDITION)
-			return &ceiling->bounds[i];
-	return NULL;
+	(void)snprintf(label, sizeof(label), "%s:", medium);
+	for (i = 0; i < ceiling->notes_count; i++) {
+		const char *cells[] = { i == 0 ? label : "",
+			ceiling->notes[i] };
+
+		columns_row(columns, cells);
+	}
+	if (ceiling->notes_count > 0)
+		(void)fputc('\n', out);
+	columns_print(columns, 0, out);
+	columns_free(columns);
 }
 
 static void
 print_direction(const struct ceiling_report *report, enum direction direction,
-    const char *title, FILE *out)
+    bool alone, FILE *out)
 {
 	const struct ceiling *ceiling = &report->ceilings[direction];
-	const struct rate_unit *unit = unit_for(ceiling->line_rate_bps);
-	const struct bound *binding = binding_bound(ceiling);
+	const struct rate_unit *unit = rate_unit_for(ceiling->line_rate_bps,
+	    ceiling->rate_bps[LEVEL_PAYLOAD]);
+	const struct bound *binding = ceiling_binding(ceiling);
 	const struct medium *medium;
-	char rate[CELL_SIZE];
+	char rate[RATE_CELL_SIZE];
 
 	medium = report->circuit->segments[ceiling->narrow].medium.medium;
 	(void)fprintf(out, "\n%s: %s %s of payload over %s\nset by %s\n",
-	    title, decimal(ceiling->rate_bps[LEVEL_PAYLOAD] / unit->digit_bps,
-	    3, "", rate), unit->symbol, protocol_name(ceiling->protocol),
-	    binding != NULL ? binding->name : "nothing");
+	    alone ? direction_name(direction) : "both directions alike",
+	    rate_unit_text(unit, ceiling->rate_bps[LEVEL_PAYLOAD],
+	    rate), unit->symbol, ceiling->top, binding != NULL ?
+	    binding->name : "nothing");
 	if (report->circuit->segments_count > 1)
 		(void)fprintf(out, "in segment '%s', whose ladder this is\n",
 		    report->circuit->segments[ceiling->narrow].name);
+	ceiling_text_both(report, direction, alone ? "this way" : "each way",
+	    unit, out);
 	(void)fputc('\n', out);
-	print_ladder(ceiling, unit, medium->source, out);
+	ladder_text(ceiling, unit, medium->source, out);
+	print_notes(ceiling, medium->name, out);
 	(void)fputc('\n', out);
 	print_bounds(ceiling, unit, out);
 	(void)fputc('\n', out);
 	print_protocols(report, direction, unit, out);
+	print_conditions(ceiling, unit, out);
+	ceiling_text_figures(report, direction, unit, out);
+}
+
+static bool
+same_notes(const struct ceiling *left, const struct ceiling *right)
+{
+	size_t i;
+
+	if (left->notes_count != right->notes_count)
+		return false;
+	for (i = 0; i < left->notes_count; i++)
+		if (strcmp(left->notes[i], right->notes[i]) != 0)
+			return false;
+	return true;
 }
 
 /* The same but for the direction. */
 static bool
-alike(const struct ceiling *left, const struct ceiling *right)
+alike(const struct ceiling_report *report)
 {
+	const struct ceiling *left = &report->ceilings[DIRECTION_A_TO_B];
+	const struct ceiling *right = &report->ceilings[DIRECTION_B_TO_A];
+	const struct both_report *both = report->both;
 	size_t i;
 
 	if (left->narrow != right->narrow ||
 	    left->line_rate_bps != right->line_rate_bps ||
 	    left->bounds_count != right->bounds_count ||
-	    left->payload_num != right->payload_num ||
-	    left->payload_den != right->payload_den)
+	    mixed_compare(left->payload, right->payload) != 0 ||
+	    both[0].low_bps != both[1].low_bps ||
+	    both[0].high_bps != both[1].high_bps ||
+	    report->figures[0].burst_ns != report->figures[1].burst_ns ||
+	    report->figures[0].window_needed_bytes !=
+	    report->figures[1].window_needed_bytes ||
+	    report->figures[0].streams_needed !=
+	    report->figures[1].streams_needed || !same_notes(left, right))
 		return false;
 	for (i = 0; i < left->bounds_count; i++)
 		if (strcmp(left->bounds[i].name, right->bounds[i].name) != 0 ||
@@ -296,11 +204,11 @@ alike(const struct ceiling *left, const struct ceiling *right)
 static void
 print_segments(const struct ceiling_report *report, FILE *out)
 {
-	static const char *const head[] = { "segment", "medium", "MTU",
-		"layers" };
+	static const char *const head[] = { "segment", "medium", "duplex",
+		"MTU", "layers" };
 	const struct circuit *circuit = report->circuit;
-	struct columns *columns = columns_new("llrw");
-	char mtu[CELL_SIZE], layers[256];
+	struct columns *columns = columns_new("lllrw");
+	char mtu[32], layers[LAYERS_TEXT_SIZE];
 	size_t i;
 
 	columns_row(columns, head);
@@ -308,7 +216,8 @@ print_segments(const struct ceiling_report *report, FILE *out)
 	for (i = 0; i < circuit->segments_count; i++) {
 		const struct segment *segment = &circuit->segments[i];
 		const char *cells[] = { segment->name,
-			segment->medium.medium->name, mtu,
+			segment->medium.medium->name,
+			duplex_name(report->segments[i].duplex), mtu,
 			layers_text(&segment->layers, layers,
 			    sizeof(layers)) };
 
@@ -316,8 +225,32 @@ print_segments(const struct ceiling_report *report, FILE *out)
 		    segment->mtu_bytes);
 		columns_row(columns, cells);
 	}
-	(void)fputc('\n', out);
 	columns_print(columns, 0, out);
+	columns_free(columns);
+}
+
+static void
+print_circuit(const struct ceiling_report *report, FILE *out)
+{
+	const struct circuit *circuit = report->circuit;
+	struct columns *columns = columns_new("w");
+	char layers[LAYERS_TEXT_SIZE];
+	const char *cells[] = { layers };
+
+	(void)fprintf(out, "%s: packets of at most %" PRIu64 " B\n",
+	    circuit->name, circuit_mtu(circuit));
+	if (circuit->segments_count > 1) {
+		(void)fputc('\n', out);
+		print_segments(report, out);
+	} else {
+		(void)layers_text(&circuit->segments[0].layers, layers,
+		    sizeof(layers));
+		columns_row(columns, cells);
+		columns_print(columns, 0, out);
+		(void)fprintf(out, "on %s, duplex: %s\n",
+		    circuit->segments[0].medium.medium->name,
+		    duplex_name(report->segments[0].duplex));
+	}
 	columns_free(columns);
 }
 
@@ -325,8 +258,6 @@ void
 ceiling_report_text(const struct ceiling_report *report, FILE *out)
 {
 	const struct circuit *circuit = report->circuit;
-	const struct ceiling *ceilings = report->ceilings;
-	char layers[256];
 	enum direction d;
 
 	if (circuit_is_reference(circuit)) {
@@ -335,20 +266,12 @@ ceiling_report_text(const struct ceiling_report *report, FILE *out)
 		    circuit->name, circuit->segments[0].medium.medium->name);
 		return;
 	}
-	(void)fprintf(out, "%s: packets of at most %" PRIu64 " B\n%s\n",
-	    circuit->name, circuit_mtu(circuit),
-	    layers_text(&circuit->segments[0].layers, layers,
-	    sizeof(layers)));
-	if (circuit->segments_count > 1)
-		print_segments(report, out);
-	if (alike(&ceilings[DIRECTION_A_TO_B], &ceilings[DIRECTION_B_TO_A])) {
-		print_direction(report, DIRECTION_A_TO_B,
-		    "both directions alike", out);
+	print_circuit(report, out);
+	if (alike(report)) {
+		print_direction(report, DIRECTION_A_TO_B, false, out);
 	} else {
 		for (d = 0; d < DIRECTIONS_SINGLE; d++)
-			print_direction(report, d, direction_name(d), out);
+			print_direction(report, d, true, out);
 	}
-	(void)fprintf(out, "\nAccuracy: %s; the clock of a line is within %"
-	    PRIu64 " ppm.\n",
-	    accuracy_name(ceilings[0].accuracy), ceilings[0].tolerance_ppm);
+	ceiling_text_accuracy(report, out);
 }

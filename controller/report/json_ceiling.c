@@ -1,5 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* One direction's ceiling as JSON, for the record and for `plafond ceiling`. */
+#include <stdio.h>
+
 #include "ceiling/ceiling.h"
 #include "report/json_value.h"
 
@@ -85,9 +87,50 @@ json_levels(const struct ceiling *ceiling)
 	return array;
 }
 
+/* On the narrow segment's medium. */
+static json_t *
+json_notes(const struct ceiling *ceiling)
+{
+	json_t *array = json_array();
+
+	for (size_t i = 0; i < ceiling->notes_count; i++)
+		json_push(array, json_value_text(ceiling->notes[i]));
+	return array;
+}
+
+static void
+push_memory(json_t *array, const char *name, const char *memory)
+{
+	char text[512];
+
+	if (memory == NULL)
+		return;
+	(void)snprintf(text, sizeof(text), "%s: %s", name, memory);
+	json_push(array, json_value_text(text));
+}
+
+/* What of the narrow segment rests on memory. */
+static json_t *
+json_memory(const struct segment *segment)
+{
+	const struct layer_stack *stack = &segment->layers;
+	json_t *array = json_array();
+
+	push_memory(array, segment->medium.medium->name,
+	    segment->medium.medium->memory);
+	for (size_t i = 0; i < stack->count; i++)
+		if (i == 0 || stack->use[i].layer != stack->use[i - 1].layer)
+			push_memory(array, stack->use[i].layer->name,
+			    stack->use[i].layer->memory);
+	return array;
+}
+
 json_t *
 json_ceiling(const struct circuit *circuit, const struct ceiling *ceiling)
 {
+	const struct segment *narrow = &circuit->segments[
+	    ceiling->narrow < circuit->segments_count ? ceiling->narrow : 0];
+	const char *note = narrow->medium.medium->accuracy_note;
 	bool known = !ceiling->reference;
 	json_t *object = json_object();
 
@@ -95,6 +138,7 @@ json_ceiling(const struct circuit *circuit, const struct ceiling *ceiling)
 	    json_value_text(direction_name(ceiling->direction)));
 	json_put(object, "protocol",
 	    json_value_text(protocol_name(ceiling->protocol)));
+	json_put(object, "top", json_value_text(ceiling->top));
 	json_put(object, "reference", json_boolean(ceiling->reference));
 	json_put(object, "line_rate_bps", known
 	    ? json_value_u64(ceiling->line_rate_bps) : json_null());
@@ -102,6 +146,8 @@ json_ceiling(const struct circuit *circuit, const struct ceiling *ceiling)
 		json_put(object, level_members[i], known &&
 		    ceiling->has_level[i]
 		    ? json_value_u64(ceiling->rate_bps[i]) : json_null());
+	json_put(object, "shared_bps", known
+	    ? json_value_u64(ceiling->shared_bps) : json_null());
 	json_put(object, "unused_bps", known
 	    ? json_value_u64(ceiling->unused_bps) : json_null());
 	json_put(object, "packet_bytes", known
@@ -112,6 +158,12 @@ json_ceiling(const struct circuit *circuit, const struct ceiling *ceiling)
 	    : json_null());
 	json_put(object, "accuracy",
 	    json_value_text(accuracy_name(ceiling->accuracy)));
+	json_put(object, "accuracy_note", note == NULL ? json_null() :
+	    json_value_text(note));
+	json_put(object, "memory", json_memory(narrow));
+	json_put(object, "notes", json_notes(ceiling));
+	json_put(object, "duplex", known ? json_value_text(duplex_name(
+	    ceiling->shared ? DUPLEX_SHARED : DUPLEX_FULL)) : json_null());
 	json_put(object, "tolerance_ppm",
 	    json_value_u64(ceiling->tolerance_ppm));
 	json_put(object, "burst_bytes", json_value_u64(ceiling->burst_bytes));

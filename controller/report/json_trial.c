@@ -2,6 +2,7 @@
 #include <math.h>
 
 #include "error.h"
+#include "judge/two_way.h"
 #include "report/json_value.h"
 #include "report/record.h"
 
@@ -96,7 +97,8 @@ put_direction(const struct record *record, const struct trial_run *run,
 {
 	const struct direction_run *way = &run->directions[direction];
 	bool counts = trial_run_counts(run, direction);
-	uint64_t target_bps = record->verdict->target_bps[direction];
+	uint64_t target_bps = two_way_target_bps(record->circuit, run,
+	    direction, record->verdict->target_bps[direction]);
 
 	json_put(object, "payload_bps", counts
 	    ? json_value_u64(way->payload_bps) : json_null());

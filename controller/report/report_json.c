@@ -25,9 +25,11 @@ json_layers(const struct layer_stack *layers)
 static json_t *
 json_service(const struct service *service)
 {
-	static const char *const names[DIRECTIONS_SINGLE][2] = {
-		{ "committed_a_to_b_bps", "peak_a_to_b_bps" },
-		{ "committed_b_to_a_bps", "peak_b_to_a_bps" },
+	static const char *const names[DIRECTIONS_SINGLE][3] = {
+		{ "committed_a_to_b_bps", "peak_a_to_b_bps",
+		  "excess_a_to_b_bps" },
+		{ "committed_b_to_a_bps", "peak_b_to_a_bps",
+		  "excess_b_to_a_bps" },
 	};
 	json_t *object = json_object();
 
@@ -37,6 +39,8 @@ json_service(const struct service *service)
 		    json_value_u64(service->committed_bps[d]));
 		json_put(object, names[d][1],
 		    json_value_u64(service->peak_bps[d]));
+		json_put(object, names[d][2],
+		    json_value_u64(service->excess_bps[d]));
 	}
 	json_put(object, "counted_at", service->counted_at < LEVELS
 	    ? json_value_text(level_name(

@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "error.h"
+#include "judge/two_way.h"
 #include "units.h"
 
 /* Columns that trials and medians share; numbers end before theirs. */
@@ -75,7 +76,8 @@ print_way(struct text_page *page, const struct record *record,
     const struct trial_run *run, enum direction direction)
 {
 	const struct direction_run *way = &run->directions[direction];
-	uint64_t target_bps = record->verdict->target_bps[direction];
+	uint64_t target_bps = two_way_target_bps(record->circuit, run,
+	    direction, record->verdict->target_bps[direction]);
 	char buf[TEXT_CELL_SIZE];
 
 	text_left(page, AT_DIRECTION, direction_name(direction));

@@ -61,8 +61,8 @@ fixture_ceiling(struct ceiling *ceiling, enum direction direction)
 		ceiling->level_bytes_num[i] = bytes[i];
 		ceiling->rate_bps[i] = FIXTURE_LINE_BPS * bytes[i] / 1538;
 	}
-	ceiling->payload_num = (uint128)FIXTURE_LINE_BPS * 1448;
-	ceiling->payload_den = 1538;
+	ceiling->payload = mixed_product(fraction_whole(FIXTURE_LINE_BPS),
+	    fraction_make(1448, 1538));
 	ceiling->level_bytes_den = 1;
 	ceiling->packet_bytes = 1500;
 	ceiling->line_rate_bps = FIXTURE_LINE_BPS;

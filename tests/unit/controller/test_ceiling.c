@@ -429,13 +429,15 @@ static void
 layers_that_do_not_fit_are_refused_with_the_circuit(void **state)
 {
 	struct circuit *circuit = circuit_of("1 Gbit/s",
-	    "ethernet, { ipv4: { options-bytes: 40 B } }, udp", "mtu: 68 B");
+	    "ethernet, { ipv4: { options-bytes: 40 B } }, udp", "mtu: 72 B");
 	struct ceiling c;
 	struct error err;
 
 	(void)state;
+	ceiling_of(circuit, PROTOCOL_UDP, &c);
+	assert_int_equal(c.packet_bytes, 72);
 	assert_int_equal(ceiling_compute(circuit, DIRECTION_A_TO_B,
-	    PROTOCOL_UDP, &c, &err), -1);
+	    PROTOCOL_TCP, &c, &err), -1);
 	assert_int_equal(err.kind, ERROR_INPUT);
 	assert_non_null(strstr(err.where, "TEST"));
 	circuit_free(circuit);

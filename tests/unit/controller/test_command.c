@@ -14,8 +14,9 @@
 #include <jansson.h>
 
 #include "command.h"
-#include "declaration_text.h"
-#include "report/ceiling_report.h"
+#include "declare/layer.h"
+#include "declare/medium.h"
+#include "error.h"
 #include "shared/scratch.h"
 
 #define COUNT(array) (sizeof(array) / sizeof((array)[0]))
@@ -83,6 +84,8 @@ defaults_hold_where_nothing_is_said(void **state)
 	    argv, &err), 0);
 	assert_int_equal(options.format, FORMAT_TEXT);
 	assert_string_equal(options.output, "");
+	assert_null(options.sweep);
+	assert_int_equal(options.packet_sizes, 0);
 	assert_int_equal(options.quiet, 0);
 }
 
@@ -126,6 +129,11 @@ a_wrong_command_line_is_a_usage_error_that_says_why(void **state)
 		{ { "ceiling", "a", "--format=html", NULL },
 		  "allowed: one of text, json, csv" },
 		{ { "ceiling", "a", "--quiet=1", NULL }, "takes no value" },
+		{ { "ceiling", "a", "--packet-sizes=1", NULL },
+		  "takes no value" },
+		{ { "ceiling", "a", "--sweep", NULL }, "needs a value" },
+		{ { "ceiling", "a", "--sweep=a", "--sweep=b" },
+		  "given twice" },
 		{ { "ceiling", "a", "--state=x", NULL }, "'--state'" },
 	};
 	struct command_options options;
@@ -387,125 +395,87 @@ the_state_folder_follows_option_then_environment(void **state)
 	assert_int_equal(rmdir(path), 0);
 }
 
-static struct ceiling_report *
-report_of(struct circuit *circuit)
+/* Runs a command and returns what it wrote. */
+static void
+run_into(const struct command *command, const char *folder, char *argv[],
+    int argc, uint64_t format, char *answer)
 {
-	struct ceiling_report *report = calloc(1, sizeof(*report));
+	static struct command_options options;
 	struct error err;
+	size_t length;
+	FILE *f;
 
-	assert_non_null(report);
-	assert_int_equal(ceiling_report_make(circuit, report, &err), 0);
-	return report;
+	memset(&options, 0, sizeof(options));
+	options.format = format;
+	(void)snprintf(options.output, sizeof(options.output), "%s/rows",
+	    folder);
+	if (command->run(&options, argc, argv, &err) == -1)
+		fail_msg("%s: %s", command->name, err.cause);
+	f = fopen(options.output, "r");
+	assert_non_null(f);
+	length = fread(answer, 1, 4 * ANSWER_SIZE - 1, f);
+	answer[length] = '\0';
+	(void)fclose(f);
 }
 
-/* 1 Gbit/s, IPv4, TCP with timestamps: 1448 of 1538 octets (RFC 7323). */
 static void
-json_holds_the_ceiling_at_every_level(void **state)
+tables_list_every_medium_and_layer_in_every_form(void **state)
 {
-	static const struct {
-		const char *name;
-		json_int_t bps;
-	} members[] = {
-		{ "line_rate_bps", 1000000000 },
-		{ "line_bps", 1000000000 },
-		{ "frame_bps", 986996098 },
-		{ "packet_bps", 975292587 },
-		{ "segment_bps", 962288686 },
-		{ "payload_bps", 941482444 },
-		{ "unused_bps", 0 },
-	};
-	struct circuit *circuit = circuit_of("1 Gbit/s", "ethernet, ipv4, tcp",
-	    "");
-	struct ceiling_report *report = report_of(circuit);
-	static char answer[ANSWER_SIZE];
-	json_t *root, *ceilings, *bound, *protocols;
-	json_int_t left = 1000000000;
+	static const uint64_t formats[] = { FORMAT_TEXT, FORMAT_JSON,
+		FORMAT_CSV };
+	static char answer[4 * ANSWER_SIZE];
+	json_t *root;
+	size_t i, n;
+
+	for (i = 0; i < COUNT(formats); i++) {
+		run_into(&command_media, *state, NULL, 0, formats[i], answer);
+		for (n = 0; media[n] != NULL; n++)
+			assert_non_null(strstr(answer, media[n]->name));
+		if (formats[i] == FORMAT_TEXT)
+			assert_true(widest_line(answer) <= 80);
+		run_into(&command_layers, *state, NULL, 0, formats[i],
+		    answer);
+		for (n = 0; layer_table[n] != NULL; n++)
+			assert_non_null(strstr(answer, layer_table[n]->name));
+		if (formats[i] == FORMAT_TEXT)
+			assert_true(widest_line(answer) <= 80);
+		if (formats[i] != FORMAT_JSON)
+			continue;
+		root = json_loads(answer, JSON_REJECT_DUPLICATES, NULL);
+		assert_int_equal(json_array_size(json_object_get(root,
+		    "layers")), n);
+		json_decref(root);
+	}
+}
+
+static void
+a_page_shows_all_that_its_row_says(void **state)
+{
+	static char answer[4 * ANSWER_SIZE], name[64];
+	char *argv[] = { name, NULL };
+	const struct field *field;
 	size_t i;
-	FILE *f = answer_begin(answer);
 
-	(void)state;
-	assert_int_equal(ceiling_report_json(report, f), 0);
-	(void)fclose(f);
-	root = json_loads(answer, JSON_REJECT_DUPLICATES, NULL);
-	assert_non_null(root);
-	ceilings = json_object_get(root, "ceilings");
-	assert_int_equal(json_array_size(ceilings), 2);
-	ceilings = json_array_get(ceilings, 1);
-	assert_string_equal(json_string_value(json_object_get(ceilings,
-	    "direction")), "b-to-a");
-	for (i = 0; i < COUNT(members); i++)
-		assert_int_equal(json_integer_value(json_object_get(ceilings,
-		    members[i].name)), members[i].bps);
-	bound = json_array_get(json_object_get(ceilings, "bounds"), 0);
-	assert_true(json_is_true(json_object_get(bound, "binding")));
-	assert_string_equal(json_string_value(json_object_get(bound,
-	    "class")), "medium");
-	for (i = 0; i < json_array_size(json_object_get(ceilings, "ladder"));
-	    i++)
-		left -= json_integer_value(json_object_get(json_array_get(
-		    json_object_get(ceilings, "ladder"), i), "bps"));
-	assert_int_equal(left, 941482444);
-	protocols = json_object_get(ceilings, "payload_by_protocol");
-	assert_int_equal(json_integer_value(json_object_get(protocols,
-	    "udp")), 957087126);
-	json_decref(root);
-	free(report);
-	circuit_free(circuit);
-}
-
-static void
-csv_quotes_as_rfc_4180_says(void **state)
-{
-	struct circuit *circuit = circuit_accepted("circuit: X\n"
-	    "layers: [ ethernet, ipv4, tcp ]\nsegments: [ { name: 'a \"b\", c'"
-	    ", medium: { kind: ethernet, line-rate: 1 Gbit/s } } ]\n");
-	struct ceiling_report *report = report_of(circuit);
-	static char answer[ANSWER_SIZE];
-	const char *line;
-	FILE *f = answer_begin(answer);
-
-	(void)state;
-	ceiling_report_csv(report, f);
-	(void)fclose(f);
-	assert_non_null(strstr(answer,
-	    "a-to-b,bound,\"ethernet line of segment 'a \"\"b\"\", c'\","
-	    "medium,,941482444,yes,IEEE 802.3\r\n"));
-	assert_non_null(strstr(answer, "a-to-b,step,\"ethernet: preamble, SFD, "
-	    "gap\",,20,13003902,,IEEE 802.3\r\n"));	/* 1e9 - 986996098 */
-	for (line = answer; (line = strchr(line, '\n')) != NULL; line++)
-		assert_int_equal(line[-1], '\r');
-	free(report);
-	circuit_free(circuit);
-}
-
-static void
-text_says_both_directions_once_where_they_are_alike(void **state)
-{
-	struct circuit *alike = circuit_of("1 Gbit/s", "ethernet, ipv4, tcp",
-	    ""), *unlike = circuit_of("1 Gbit/s", "ethernet, ipv4, tcp",
-	    "service: { committed: { a-to-b: 1 Mbit/s, b-to-a: 2 Mbit/s } }");
-	struct ceiling_report *report = report_of(alike);
-	static char answer[ANSWER_SIZE];
-	FILE *f = answer_begin(answer);
-
-	(void)state;
-	ceiling_report_text(report, f);
-	(void)fclose(f);
-	free(report);
-	assert_non_null(strstr(answer, "both directions alike: 941.482 Mbit/s"
-	    ));
-	assert_null(strstr(answer, "a-to-b"));
-	assert_true(widest_line(answer) <= 80);
-	memset(answer, 0, sizeof(answer));
-	report = report_of(unlike);
-	f = answer_begin(answer);
-	ceiling_report_text(report, f);
-	(void)fclose(f);
-	free(report);
-	assert_non_null(strstr(answer, "a-to-b: 0.953 Mbit/s"));
-	assert_non_null(strstr(answer, "b-to-a: 1.907 Mbit/s"));
-	circuit_free(alike);
-	circuit_free(unlike);
+	for (i = 0; media[i] != NULL; i++) {
+		(void)snprintf(name, sizeof(name), "%s", media[i]->name);
+		run_into(&command_media, *state, argv, 1, FORMAT_TEXT, answer);
+		assert_non_null(strstr(answer,
+		    accuracy_name(media[i]->accuracy)));
+		assert_non_null(strstr(answer,
+		    duplex_name(media[i]->duplex)));
+		assert_int_equal(strstr(answer, "\n  memory ") != NULL,
+		    media[i]->memory != NULL);
+		assert_true(widest_line(answer) <= 80);
+		for (field = media[i]->fields; field->name != NULL; field++)
+			assert_non_null(strstr(answer, field->name));
+	}
+	for (i = 0; layer_table[i] != NULL; i++) {
+		(void)snprintf(name, sizeof(name), "%s", layer_table[i]->name);
+		run_into(&command_layers, *state, argv, 1, FORMAT_TEXT,
+		    answer);
+		assert_non_null(strstr(answer, layer_table[i]->title));
+		assert_true(widest_line(answer) <= 80);
+	}
 }
 
 int
@@ -533,10 +503,12 @@ main(void)
 		cmocka_unit_test_setup_teardown(
 		    the_state_folder_follows_option_then_environment,
 		    make_folder, remove_folder),
-		cmocka_unit_test(json_holds_the_ceiling_at_every_level),
-		cmocka_unit_test(csv_quotes_as_rfc_4180_says),
-		cmocka_unit_test(
-		    text_says_both_directions_once_where_they_are_alike),
+		cmocka_unit_test_setup_teardown(
+		    tables_list_every_medium_and_layer_in_every_form,
+		    make_folder, remove_folder),
+		cmocka_unit_test_setup_teardown(
+		    a_page_shows_all_that_its_row_says, make_folder,
+		    remove_folder),
 	};
 
 	return cmocka_run_group_tests(tests, NULL, NULL);

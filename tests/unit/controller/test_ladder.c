@@ -5,86 +5,62 @@
 #include <stdint.h>
 #include <cmocka.h>
 
-/* Properties of ceilings, over stacks and rates drawn by a seeded sequence. */
-#include "ceiling/ceiling.h"
-#include "declaration_text.h"
+/* Properties of ceilings, over stacks of the whole table, rates and contracts
+ * drawn by a seeded sequence. */
+#include "ladder_checks.h"
+#include "random_stack.h"
 
-#define COUNT(array) (sizeof(array) / sizeof((array)[0]))
+#define ROUNDS 400
+#define SEGMENTS 4
 
-/* A sequence that is the same in every run (Lehmer, Park and Miller 1988). */
-static uint64_t
-next_random(uint64_t *seed, uint64_t below)
-{
-	*seed = *seed * 48271 % 2147483647;
-	return *seed % below;
-}
+/* What is drawn for one round. */
+struct drawn {
+	struct random_stack written;
+	struct layer_stack layers;
+	uint64_t mtu_bytes;
+	struct awkward medium;		/* a line without steps */
+};
 
 static void
-random_declaration(uint64_t *seed, char layers[256], char more[256],
-    uint64_t *rate_bps)
+draw(uint64_t *seed, size_t most, struct drawn *out)
 {
-	static const char *const counted[] = { "line", "frame",
-		"frame-without-fcs", "packet", "segment", "payload" };
-	static const char *const tops[] = { "udp", "tcp",
-		"{ tcp: { timestamps: no } }",
-		"{ tcp: { options-bytes: 8 B } }", "tcp, tls",
-		"tcp, { tls: { version: 1.2, record-bytes: 777 B } }" };
-	uint64_t tags = next_random(seed, 4);
-
-	*rate_bps = 1 + next_random(seed, 2000000000) *
+	random_layers(seed, most, &out->written, &out->layers);
+	out->mtu_bytes = 1280 + next_random(seed, 8000);
+	memset(&out->medium, 0, sizeof(out->medium));
+	out->medium.den = 1 + next_random(seed, 66);
+	out->medium.line_bps = 1000 + next_random(seed, 2000000000) *
 	    (1 + next_random(seed, 700));
-	(void)snprintf(layers, 256, "ethernet, %s%s%s%s, %s",
-	    tags > 0 ? "vlan, " : "", tags > 1 ? "vlan, " : "",
-	    tags > 2 ? "vlan, " : "", next_random(seed, 2) == 0 ? "ipv4" :
-	    "ipv6", tops[next_random(seed, COUNT(tops))]);
-	(void)snprintf(more, 256, "mtu: %lu B\n", (unsigned long)(1280 +
-	    next_random(seed, 8000)));
-	if (next_random(seed, 2) == 0)
-		(void)snprintf(more + strlen(more), 256 - strlen(more),
-		    "service: { committed: %lu bit/s, counted-at: %s }",
-		    (unsigned long)(1 + next_random(seed, 2147483646)),
-		    counted[next_random(seed, COUNT(counted))]);
+	out->medium.contention = 1 + next_random(seed, 3);
+	out->medium.duplex = next_random(seed, 2);
 }
 
-static struct circuit *
-random_circuit(uint64_t *seed, const char *first_layer, uint64_t extra_bps,
-    enum protocol *protocol)
-{
-	char layers[256], stack[300], more[256], rate[64];
-	struct circuit *circuit;
-	uint64_t rate_bps;
-
-	random_declaration(seed, layers, more, &rate_bps);
-	(void)snprintf(rate, sizeof(rate), "%lu bit/s",
-	    (unsigned long)(rate_bps + extra_bps));
-	(void)snprintf(stack, sizeof(stack), "ethernet, %s%s", first_layer,
-	    layers + strlen("ethernet, "));
-	circuit = circuit_of(rate, stack, more);
-	*protocol = circuit_default_protocol(circuit);
-	return circuit;
-}
-
-/* What the steps print is what lies between the levels; nothing is lost. */
+/* A contract at a level that the layers have, in half the rounds. */
 static void
-assert_columns_add_up(const struct ceiling *c)
+draw_contract(uint64_t *seed, struct circuit *circuit)
 {
-	uint64_t bps = c->line_rate_bps;
-	struct fraction octets = fraction_make(c->level_bytes_num[LEVEL_LINE],
-	    c->level_bytes_den);
-	size_t i;
+	struct service *service = &circuit->services[0];
 
-	for (i = 0; i < c->steps_count; i++) {
-		assert_true(bps >= c->steps[i].bps);
-		bps -= c->steps[i].bps;
-		octets = fraction_subtract(octets, fraction_make(
-		    c->steps[i].bytes_num, c->steps[i].bytes_den));
-		if (c->steps[i].reaches_level)
-			assert_int_equal(bps,
-			    c->rate_bps[c->steps[i].level]);
+	if (next_random(seed, 2) == 0)
+		return;
+	circuit->services_count = 1;
+	service->counted_at = next_random(seed, LEVELS);
+	if (!layers_have_level(&circuit->segments[0].layers,
+	    (enum layer_level)service->counted_at))
+		service->counted_at = LEVEL_PACKET;
+	for (int d = 0; d < DIRECTIONS_SINGLE; d++) {
+		service->committed_bps[d] = 1 + next_random(seed, 2147483646);
+		service->peak_bps[d] = service->burst_bytes[d] = FIELD_UNSET;
 	}
-	assert_int_equal(bps, c->rate_bps[LEVEL_PAYLOAD]);
-	assert_int_equal(fraction_compare(octets, fraction_make(
-	    c->level_bytes_num[LEVEL_PAYLOAD], c->level_bytes_den)), 0);
+}
+
+/* The declared stack's, from a to b.  False: it does not fit. */
+static bool
+ceiling_made(const struct circuit *circuit, struct ceiling *out)
+{
+	const struct load load = { .declared = true };
+	struct error err;
+
+	return ceiling_of_load(circuit, &load, out, &err) == 0;
 }
 
 static void
@@ -92,66 +68,174 @@ ladders_add_up_and_levels_descend(void **state)
 {
 	uint64_t seed = 20240917;
 	struct circuit *circuit;
-	enum protocol protocol;
+	struct drawn drawn;
 	struct ceiling c;
-	int round;
+	int round, made = 0;
 
 	(void)state;
-	for (round = 0; round < 300; round++) {
-		circuit = random_circuit(&seed, "", 0, &protocol);
-		ceiling_of(circuit, protocol, &c);
-		assert_columns_add_up(&c);
-		assert_true(c.line_rate_bps >= c.rate_bps[LEVEL_LINE]);
-		assert_true(c.rate_bps[LEVEL_LINE] >= c.rate_bps[LEVEL_FRAME]);
-		assert_true(c.rate_bps[LEVEL_FRAME] >=
-		    c.rate_bps[LEVEL_FRAME_WITHOUT_FCS]);
-		assert_true(c.rate_bps[LEVEL_FRAME_WITHOUT_FCS] >=
-		    c.rate_bps[LEVEL_PACKET]);
-		assert_true(c.rate_bps[LEVEL_PACKET] >=
-		    c.rate_bps[LEVEL_SEGMENT]);
-		assert_true(c.rate_bps[LEVEL_SEGMENT] >=
-		    c.rate_bps[LEVEL_PAYLOAD]);
-		assert_int_equal((uint64_t)(c.payload_num / c.payload_den),
-		    c.rate_bps[LEVEL_PAYLOAD]);
+	for (round = 0; round < ROUNDS; round++) {
+		draw(&seed, LAYERS_DECLARED_MAX, &drawn);
+		circuit = awkward_circuit(&drawn.layers, drawn.mtu_bytes,
+		    &drawn.medium);
+		draw_contract(&seed, circuit);
+		if (ceiling_made(circuit, &c)) {
+			made++;
+			assert_columns_add_up(&c);
+			assert_levels_descend(&c);
+		}
+		circuit_free(circuit);
+	}
+	assert_true(made > ROUNDS / 2);
+}
+
+static void
+a_faster_line_never_lowers_it(void **state)
+{
+	uint64_t seed = 31415;
+	struct circuit *circuit;
+	struct drawn drawn;
+	struct ceiling c, faster;
+	struct awkward more;
+
+	(void)state;
+	for (int round = 0; round < ROUNDS; round++) {
+		draw(&seed, LAYERS_DECLARED_MAX, &drawn);
+		circuit = awkward_circuit(&drawn.layers, drawn.mtu_bytes,
+		    &drawn.medium);
+		draw_contract(&seed, circuit);
+		if (ceiling_made(circuit, &c)) {
+			more = drawn.medium;
+			more.line_bps += 1 + next_random(&seed, 1000000);
+			memcpy(&circuit->segments[0].medium.parameters, &more,
+			    sizeof(more));
+			assert_true(ceiling_made(circuit, &faster));
+			assert_true(mixed_compare(faster.payload,
+			    c.payload) >= 0);
+		}
 		circuit_free(circuit);
 	}
 }
 
-static int
-compare_payload(const struct ceiling *left, const struct ceiling *right)
+/* Fixed cells pay for a tunnel that makes the packet a little shorter: there it
+ * can rise, as it can fall with a larger MTU. */
+static bool
+pads_below_ip(const struct layer_stack *layers)
 {
-	return fraction_compare(
-	    fraction_make(left->payload_num, left->payload_den),
-	    fraction_make(right->payload_num, right->payload_den));
+	for (size_t i = 0; i < layers_lowest_packet(layers); i++)
+		if (layers->use[i].cost.align_bytes > 1)
+			return true;
+	return false;
 }
 
 static void
-faster_lines_never_lower_and_tags_never_raise_it(void **state)
+a_tag_label_or_tunnel_more_never_raises_it(void **state)
 {
-	uint64_t seed = 31415, again;
-	struct circuit *plain, *faster, *tagged;
-	struct ceiling c, f, t;
-	enum protocol protocol;
-	int round;
+	uint64_t seed = 27182;
+	struct random_stack more;
+	struct layer_stack layers;
+	struct circuit *circuit;
+	struct ceiling c, longer;
+	struct drawn drawn;
+	int tried = 0;
 
 	(void)state;
-	for (round = 0; round < 100; round++) {
-		again = seed;
-		plain = random_circuit(&again, "", 0, &protocol);
-		again = seed;
-		faster = random_circuit(&again, "", 1 + (uint64_t)round,
-		    &protocol);
-		again = seed;
-		tagged = random_circuit(&again, "vlan, ", 0, &protocol);
-		seed = again;
-		ceiling_of(plain, protocol, &c);
-		ceiling_of(faster, protocol, &f);
-		ceiling_of(tagged, protocol, &t);
-		assert_true(compare_payload(&f, &c) >= 0);
-		assert_true(compare_payload(&t, &c) <= 0);
-		circuit_free(plain);
-		circuit_free(faster);
-		circuit_free(tagged);
+	for (int round = 0; round < 8 * ROUNDS; round++) {
+		draw(&seed, 8, &drawn);
+		if (pads_below_ip(&drawn.layers) ||
+		    !random_insert(&seed, &drawn.written, &more) ||
+		    !random_stack_read(&more, &layers) ||
+		    pads_below_ip(&layers))
+			continue;
+		circuit = awkward_circuit(&drawn.layers, drawn.mtu_bytes,
+		    &drawn.medium);
+		if (ceiling_made(circuit, &c)) {
+			circuit->segments[0].layers = layers;
+			if (ceiling_made(circuit, &longer)) {
+				tried++;
+				if (mixed_compare(longer.payload,
+				    c.payload) > 0)
+					fail_msg("round %d raises it", round);
+			}
+		}
+		circuit_free(circuit);
+	}
+	assert_true(tried > ROUNDS / 4);
+}
+
+static void
+a_larger_mtu_lowers_it_on_cells_alone(void **state)
+{
+	uint64_t seed = 16180;
+	struct circuit *circuit;
+	struct drawn drawn;
+	struct ceiling c, larger;
+	int lower = 0;
+
+	(void)state;
+	for (int round = 0; round < ROUNDS; round++) {
+		draw(&seed, LAYERS_DECLARED_MAX, &drawn);
+		circuit = awkward_circuit(&drawn.layers, drawn.mtu_bytes,
+		    &drawn.medium);
+		if (ceiling_made(circuit, &c)) {
+			circuit->segments[0].mtu_bytes++;
+			assert_true(ceiling_made(circuit, &larger));
+			if (mixed_compare(larger.payload, c.payload) < 0) {
+				lower++;
+				assert_true(pads_below_ip(&drawn.layers));
+			}
+		}
+		circuit_free(circuit);
+	}
+	assert_true(lower > 0);
+}
+
+/* The same layers on several media, each with a contract of its own or none. */
+static void
+draw_segments(uint64_t *seed, struct circuit *circuit)
+{
+	struct segment *segment;
+	struct drawn drawn;
+
+	circuit->segments_count = SEGMENTS;
+	for (size_t i = 1; i < SEGMENTS; i++) {
+		segment = &circuit->segments[i];
+		*segment = circuit->segments[0];
+		draw(seed, 3, &drawn);
+		memcpy(&segment->medium.parameters, &drawn.medium,
+		    sizeof(drawn.medium));
+		if (next_random(seed, 3) != 0)
+			continue;
+		segment->service.committed_bps[0] =
+		    1 + next_random(seed, 2147483646);
+		segment->service.counted_at = LEVEL_PACKET;
+	}
+}
+
+static void
+the_order_of_segments_does_not_matter(void **state)
+{
+	uint64_t seed = 14142;
+	struct segment first;
+	struct circuit *circuit;
+	struct drawn drawn;
+	struct ceiling c, turned;
+
+	(void)state;
+	for (int round = 0; round < ROUNDS / 2; round++) {
+		draw(&seed, LAYERS_DECLARED_MAX, &drawn);
+		circuit = awkward_circuit(&drawn.layers, drawn.mtu_bytes,
+		    &drawn.medium);
+		draw_segments(&seed, circuit);
+		if (ceiling_made(circuit, &c)) {
+			first = circuit->segments[0];
+			memmove(&circuit->segments[0], &circuit->segments[1],
+			    (SEGMENTS - 1) * sizeof(first));
+			circuit->segments[SEGMENTS - 1] = first;
+			assert_true(ceiling_made(circuit, &turned));
+			assert_int_equal(mixed_compare(turned.payload,
+			    c.payload), 0);
+		}
+		circuit_free(circuit);
 	}
 }
 
@@ -160,8 +244,10 @@ main(void)
 {
 	const struct CMUnitTest tests[] = {
 		cmocka_unit_test(ladders_add_up_and_levels_descend),
-		cmocka_unit_test(
-		    faster_lines_never_lower_and_tags_never_raise_it),
+		cmocka_unit_test(a_faster_line_never_lowers_it),
+		cmocka_unit_test(a_tag_label_or_tunnel_more_never_raises_it),
+		cmocka_unit_test(a_larger_mtu_lowers_it_on_cells_alone),
+		cmocka_unit_test(the_order_of_segments_does_not_matter),
 	};
 
 	return cmocka_run_group_tests(tests, NULL, NULL);

@@ -257,6 +257,12 @@ a_rate_above_the_ceiling_beyond_the_tolerance_is_void(void **state)
 	    "token bucket"));
 	assert_non_null(strstr(verdict_void_reason(&f->verdict)->text,
 	    "start of the clock"));
+	/* An estimate may be too low itself: that is said and voids nothing. */
+	f->ceilings[DIRECTION_A_TO_B].accuracy = ACCURACY_MODEL;
+	judge(f);
+	assert_int_equal(f->verdict.outcome, OUTCOME_MEETS);
+	assert_non_null(fixture_reason(&f->verdict, "above-estimate"));
+	f->ceilings[DIRECTION_A_TO_B].accuracy = ACCURACY_EXACT;
 	/* A bucket of 6 B adds 8 * 6 / 3 s = 16 bit/s. */
 	f->ceilings[DIRECTION_A_TO_B].burst_bytes = 6;
 	judge(f);
