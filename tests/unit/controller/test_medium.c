@@ -102,7 +102,7 @@ a_wrong_medium_is_refused_with_its_place(void **state)
 		{ "{ kind: ethernt, line-rate: 1 Gbit/s }", "test:2:17" },
 		{ "{ kind: ethernt, line-rate: 1 Gbit/s }",
 		  "did you mean 'ethernet'" },
-		{ "{ kind: carrier-pigeon }", "allowed: ethernet, host" },
+		{ "{ kind: carrier-pigeon }", "allowed: ethernet, pdh" },
 		{ "{ line-rate: 1 Gbit/s }", "kind" },
 		{ "{ kind: [ ethernet ] }", "kind" },
 		{ "[ ethernet ]", "test:2:9" },
