@@ -156,6 +156,7 @@ void command_list(const struct command *const commands[], size_t count,
 extern const struct command command_ceiling;
 extern const struct command command_media;
 extern const struct command command_layers;
+extern const struct command command_draft;
 extern const struct command command_ready;
 extern const struct command command_accept;
 extern const struct command command_identity;

@@ -11,6 +11,7 @@ static const struct command *const commands[] = {
 	&command_ceiling,
 	&command_media,
 	&command_layers,
+	&command_draft,
 	&command_ready,
 	&command_accept,
 	&command_identity,

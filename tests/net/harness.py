@@ -368,7 +368,7 @@ class Bed:
     def controller(self, *argv, host=None, **options):
         """Start `plafond` on host a, or where there is none, here."""
         words = [CONTROLLER, argv[0], "--state", self.state] + list(argv[1:])
-        if argv[0] in ("ceiling", "media", "layers"):
+        if argv[0] in ("ceiling", "media", "layers", "draft"):
             words = [CONTROLLER] + list(argv)
         return (host or self.a or self.here).start(
             words, f"plafond-{argv[0]}", **options)
