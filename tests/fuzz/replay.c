@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* A fuzz target goes once through the files of its corpus, without a fuzzer and
- * with any compiler: fuzz_NAME FOLDER. */
+ * with any compiler: fuzz_NAME FOLDER... */
 #include <dirent.h>
 #include <stdint.h>
 #include <stdio.h>
@@ -53,25 +53,41 @@ replay(const char *folder, const char *name)
 	return 0;
 }
 
+/* Number of its files, -1: one cannot be read. */
+static int
+replay_folder(const char *path)
+{
+	struct dirent *entry;
+	DIR *folder = opendir(path);
+	int count = 0;
+
+	if (folder == NULL)
+		return -1;
+	while (count != -1 && (entry = readdir(folder)) != NULL) {
+		if (entry->d_name[0] == '.')
+			continue;
+		count = replay(path, entry->d_name) == -1 ? -1 : count + 1;
+	}
+	(void)closedir(folder);
+	return count;
+}
+
 int
 main(int argc, char *argv[])
 {
-	struct dirent *entry;
-	unsigned count = 0;
-	DIR *folder;
+	int i, count;
 
-	if (argc != 2 || (folder = opendir(argv[1])) == NULL) {
-		(void)fprintf(stderr, "usage: %s FOLDER\n", argv[0]);
+	if (argc < 2) {
+		(void)fprintf(stderr, "usage: %s FOLDER...\n", argv[0]);
 		return 64;
 	}
-	while ((entry = readdir(folder)) != NULL) {
-		if (entry->d_name[0] == '.')
-			continue;
-		if (replay(argv[1], entry->d_name) == -1)
+	for (i = 1; i < argc; i++) {
+		count = replay_folder(argv[i]);
+		if (count <= 0) {
+			(void)fprintf(stderr, "nothing in %s\n", argv[i]);
 			return 1;
-		count++;
+		}
+		(void)printf("%s: %d files\n", argv[i], count);
 	}
-	(void)closedir(folder);
-	(void)printf("%u files\n", count);
-	return count > 0 ? 0 : 1;
+	return 0;
 }

@@ -1,6 +1,7 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 """Bad input: the message names file, line, column, field, what was found and
 what is allowed, and the status is the one of sysexits."""
+import json
 import subprocess
 
 import harness
@@ -18,7 +19,8 @@ def ceiling(text, status, says, *options):
         path.write_text(text)
         message = bed.refused("ceiling", *options, path, status=status,
                               says=says)
-        assert len(message.strip().splitlines()) == 1, message
+        lines = 2 if status == 64 else 1	# where help is
+        assert len(message.strip().splitlines()) == lines, message
 
 
 @harness.plain
@@ -207,6 +209,54 @@ def test_tables_list_their_rows():
             assert process.wait() == 0, process.tail()
             for word in words:
                 assert word in process.stdout, process.tail()
+
+
+@harness.plain
+def test_sweep_of_what_is_no_number():
+    ceiling(GOOD, 64, ["circuit is a text and cannot be swept"],
+            "--sweep", "circuit=a..b")
+
+
+@harness.plain
+def test_sweep_of_an_unknown_field_names_the_nearest():
+    ceiling(GOOD, 64, ["mut", "mtu"], "--sweep", "mut=64 B..1500 B")
+
+
+@harness.plain
+def test_sweep_without_a_unit():
+    ceiling(GOOD, 64, ["FROM", "'64'", "a size such as"],
+            "--sweep", "mtu=64..1500")
+
+
+@harness.plain
+def test_sweep_beyond_what_the_field_allows():
+    ceiling(GOOD, 65, ["--sweep mtu", "160000 B"],
+            "--sweep", "mtu=1500 B..160000 B")
+
+
+@harness.plain
+def test_sweep_and_packet_sizes_together():
+    ceiling(GOOD, 64, ["one of them"], "--packet-sizes",
+            "--sweep", "mtu=64 B..1500 B")
+
+
+@harness.plain
+def test_every_view_of_every_example():
+    def none(name):
+        raise ValueError(name)		# NaN, Infinity
+
+    views = ([], ["--packet-sizes"],
+             ["--sweep", "conditions.round-trip=1 ms..100 ms"])
+    with harness.bed() as bed:
+        for path in sorted((harness.SOURCE
+                            / "controller/examples").glob("*.yaml")):
+            for view in views:
+                for form in ("text", "json", "csv"):
+                    process = bed.controller("ceiling", path, *view,
+                                             "--format", form)
+                    assert process.wait() == 0, process.tail()
+                    if form == "json":
+                        json.loads(process.stdout, parse_constant=none)
 
 
 @harness.plain
