@@ -21,12 +21,12 @@ SHELL_SCRIPTS = ("controller/quickstart", "tests/run", "tests/install",
                  ".ci/run")
 # May be absent, and the script says so: sudo is only used where it is.
 OPTIONAL = {"sudo"}
-# Tools that the build calls by itself, Python modules, and the package that
-# has the headers that every C file sees.
+# Tools that the build calls by itself, and the package that has the headers
+# that every C file sees.
 IMPLIED = {"gcc": "/usr/bin/gcc", "ninja": "/usr/bin/ninja",
            "pkg-config": "/usr/bin/pkg-config",
-           "stdio.h": "/usr/include/stdio.h",
-           "jsonschema": "/usr/lib/python3/dist-packages/jsonschema"}
+           "stdio.h": "/usr/include/stdio.h"}
+PYTHON_MODULES = pathlib.Path("/usr/lib/python3/dist-packages")
 WORD = r"[A-Za-z0-9_./-]+"
 
 
@@ -172,6 +172,21 @@ def commands():
                 yield f"{path.relative_to(SOURCE)} calls {word}", found
 
 
+def modules():
+    """(what imports, path) of every Python module that is neither Python's own
+    nor a file of the tests."""
+    own = {path.stem for path in SOURCE.glob("tests/**/*.py")}
+    for path in sorted(SOURCE.glob("tests/**/*.py")):
+        for node in ast.walk(ast.parse(path.read_text())):
+            names = [alias.name for alias in node.names] \
+                if isinstance(node, ast.Import) else \
+                [node.module] if isinstance(node, ast.ImportFrom) else []
+            for name in {name.partition(".")[0] for name in names}:
+                if name not in own | sys.stdlib_module_names:
+                    yield f"{path.relative_to(SOURCE)} imports {name}", \
+                        str(PYTHON_MODULES / name)
+
+
 def of_clang():
     """clang and libFuzzer, where they are there: tests/run needs neither."""
     if shutil.which("clang"):
@@ -188,7 +203,7 @@ def main():
                         table) | {"apt", "dpkg"}
     wrong, used = [], set()
     uses = list(linked()) + list(asked_of_pkg_config()) + list(commands()) \
-        + list(of_clang()) \
+        + list(modules()) + list(of_clang()) \
         + [(f"{name} is needed", path) for name, path in IMPLIED.items()]
     owner = owners({path for _, path in uses})
     for what, path in uses:

@@ -32,7 +32,10 @@ def skip(reason):
 
 
 def main():
-    test = getattr(load(sys.argv[1]), sys.argv[2])
+    try:
+        test = getattr(load(sys.argv[1]), sys.argv[2])
+    except ModuleNotFoundError as error:
+        return skip(f"Python's module {error.name} is not installed")
     if not getattr(test, "plain", False):
         if INSIDE not in os.environ:
             words = harness.namespace_command()
