@@ -219,8 +219,9 @@ const struct layer layer_tls = {
 	.adjust = adjust_tls,
 	.fields = tls_fields,
 	.inside = "record headers and tags",
-	.formula = "carried * (record-bytes + X) / record-bytes; X = 22 (1.3), "
-	    "29 (1.2 aes-gcm), 21 (1.2 chacha20-poly1305), 8 less with "
+	.formula = "carried * (record-bytes + X) / record-bytes, the average "
+	    "over a long stream, whose records straddle segments; X = 22 "
+	    "(1.3), 29 (1.2 aes-gcm), 21 (1.2 chacha20-poly1305), 8 less with "
 	    "aes-ccm-8; 1.2 aes-cbc: 21 + padding to 16 + MAC",
 	.source = "RFC 8446, 5246",
 };
