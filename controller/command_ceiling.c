@@ -1,5 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* plafond ceiling: what a declared circuit can carry at most, and why. */
+#include <assert.h>
 #include <stdlib.h>
 
 #include "command.h"
@@ -75,6 +76,7 @@ static int
 print(const struct view *view, const struct command_options *options,
     FILE *out, struct error *err)
 {
+	assert(view->text != NULL && view->json != NULL && view->csv != NULL);
 	switch ((enum format)options->format) {
 	case FORMAT_TEXT:
 		view->text(view->data, out);

@@ -262,7 +262,7 @@ static void
 fill_rates(const struct assembly *a, const struct path_segment *segment,
     struct ceiling *out)
 {
-	struct mixed rates[LADDER_STEPS_MAX], levels[LEVELS];
+	struct mixed rates[LADDER_STEPS_MAX] = { { 0 } }, levels[LEVELS];
 	struct fraction octets[LEVELS];
 	struct packet_steps packet;
 	uint64_t bps[LADDER_STEPS_MAX];

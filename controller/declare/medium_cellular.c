@@ -194,7 +194,7 @@ check_tdd(const struct scope *scope, struct error *err)
 		return node_error(medium_place(node,
 		    "special-downlink-symbols"), err, "tdd: found %llu "
 		    "symbols in the special slot, allowed: at most 14 with "
-		    "special-uplink-symbols", (unsigned long long)(down + up));
+		    "special-uplink-symbols", (unsigned long long)down + up);
 	if (tdd_symbols(tdd, false) == 0 || tdd_symbols(tdd, true) == 0)
 		return node_error(node, err, "tdd: a direction has no "
 		    "symbols, allowed: some for each");

@@ -276,6 +276,7 @@ static double
 data_subcarriers(const struct parameters *p)
 {
 	uint64_t all = subcarriers(p), pilots, codewords;
+	uint64_t plc = PLC_HZ / p->spacing_hz;
 	double left;
 
 	pilots = (p->pilot_density * all * p->spacing_hz + PILOTS_SPAN_HZ - 1) /
@@ -284,7 +285,7 @@ data_subcarriers(const struct parameters *p)
 		pilots = PILOTS_MIN;
 	if (pilots > PILOTS_MAX)
 		pilots = PILOTS_MAX;
-	left = (double)(all - PLC_HZ / p->spacing_hz - PILOTS_FIXED - pilots) -
+	left = (double)(all - plc - PILOTS_FIXED - pilots) -
 	    (double)all / SCATTERED_EACH;
 	codewords = (uint64_t)ceil(left * p->bits_per_subcarrier /
 	    CODEWORD_BITS);

@@ -130,14 +130,11 @@ print_direction(const struct packet_sizes *sizes, enum direction direction,
 		.unit = rate_unit_for(largest_bps(d), 0),
 		.udp_apart = strcmp(sizes->top, "udp") != 0,
 		.binding = !one_binding(d) };
-	char alignment[COLUMNS_MAX + 1] = "rrrrr";
+	char alignment[COLUMNS_MAX + 1];
 
-	if (d->frames)
-		(void)strcat(alignment, "rr");
-	if (table.udp_apart)
-		(void)strcat(alignment, "r");
-	if (table.binding)
-		(void)strcat(alignment, "l");
+	(void)snprintf(alignment, sizeof(alignment), "rrrrr%s%s%s",
+	    d->frames ? "rr" : "", table.udp_apart ? "r" : "",
+	    table.binding ? "l" : "");
 	(void)fprintf(out, "\n%s, in %s", title, table.unit->symbol);
 	if (!table.binding)
 		(void)fprintf(out, "; set by %s", d->sizes[0].rate.binding);

@@ -224,7 +224,8 @@ read_whole(const struct words *words, struct sweep_range *out,
 		return -1;
 	if (out->step == 0)
 		return refuse_step(words, err);
-	return check_count((double)(range / out->step) + 1.0, out, err);
+	range /= out->step;
+	return check_count((double)range + 1.0, out, err);
 }
 
 /* How large one of the unit is. */

@@ -144,7 +144,7 @@ static void
 print_table(const struct sweep *sweep, enum direction direction,
     const struct common *common, const struct rate_unit *unit, FILE *out)
 {
-	char alignment[COLUMNS_MAX + 1] = "r";
+	char alignment[COLUMNS_MAX + 1] = "r", *end = alignment + 1;
 	struct shape shape = { .unit = unit, .common = common,
 		.binding = !common->one_binding,
 		.condition = common->conditions };
@@ -152,11 +152,12 @@ print_table(const struct sweep *sweep, enum direction direction,
 
 	for (i = 0; i < SHOWN_LEVELS; i++)
 		if (common->level[levels[i]])
-			(void)strcat(alignment, "r");
+			*end++ = 'r';
 	if (shape.condition)
-		(void)strcat(alignment, common->one_condition ? "r" : "l");
+		*end++ = common->one_condition ? 'r' : 'l';
 	if (shape.binding)
-		(void)strcat(alignment, "l");
+		*end++ = 'l';
+	*end = '\0';
 	shape.columns = columns_new(alignment);
 	add_head(sweep, &shape);
 	for (i = 0; i < sweep->range.count; i++)
