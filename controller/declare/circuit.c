@@ -145,6 +145,12 @@ settle_segment(struct segment *segment, const struct layer_stack *inherited,
 		    segment->layers.use[layers_lowest_packet(
 		    &segment->layers)].layer->name,
 		    (unsigned long long)min_bytes);
+	if (medium->max_mtu_bytes != 0 &&
+	    segment->mtu_bytes > medium->max_mtu_bytes)
+		return node_error(place(node, "mtu"), err, "mtu: found %llu B, "
+		    "allowed on medium %s: at most %llu B",
+		    (unsigned long long)segment->mtu_bytes, medium->name,
+		    (unsigned long long)medium->max_mtu_bytes);
 	if (layers_check_fit(&segment->layers, segment->mtu_bytes, err) == -1)
 		return -1;
 	if (segment->exclusive == 1 && segment->shared_with_count > 0)

@@ -103,6 +103,7 @@ struct medium {
 	bool bare_frames;	/* Ethernet frames lie on it without preamble
 				 * and gap */
 	uint64_t default_mtu_bytes;	/* where no layer has a say; else 0 */
+	uint64_t max_mtu_bytes;		/* 0: no limit of the medium */
 	enum duplex duplex;	/* unless a field says otherwise */
 	uint64_t tolerance_ppm;	/* of the medium's clock */
 	/* Offset of the uint64_t of MEDIUM_SUBSCRIBER_ROW; 0: has none. */

@@ -42,12 +42,33 @@ static const struct field fields[] = {
 	{ .name = NULL },
 };
 
+/* Below the gap to capacity. */
+static double
+net_bps(const struct parameters *p, enum direction direction)
+{
+	double width_hz = p->width_hz[direction];
+
+	return (double)p->streams * shannon_bps(width_hz, signal_snr(
+	    &p->signal, direction, width_hz) / ratio_of_db(p->gap_db));
+}
+
 static int
 check(void *base, const struct node *node, struct error *err)
 {
 	const struct parameters *p = base;
 
-	return signal_check(&p->signal, node, "analogue", true, err);
+	if (signal_check(&p->signal, node, "analogue", true, err) == -1)
+		return -1;
+	for (enum direction d = 0; d < DIRECTIONS_SINGLE; d++)
+		if (net_bps(p, d) < 1)
+			return node_error(medium_place(node, "snr"), err,
+			    "analogue: found S/N of %.1f dB, at which less "
+			    "than 1 bit/s is left; as S/N -> 0 so does C = B "
+			    "log2(1 + S/N), and Eb/N0 stays above ln 2 = "
+			    "-1.59 dB; allowed: a larger S/N or more hertz",
+			    decibels(signal_snr(&p->signal, d,
+			    p->width_hz[d])));
+	return 0;
 }
 
 static void
@@ -76,23 +97,16 @@ capacity(const void *base, const struct medium_load *load,
 	const struct parameters *p = base;
 	double width_hz = p->width_hz[load->direction];
 	double snr = signal_snr(&p->signal, load->direction, width_hz);
-	double streams = (double)p->streams, bps;
 
-	bps = streams * shannon_bps(width_hz, snr / ratio_of_db(p->gap_db));
-	if (bps < 1)
-		return error_set(err, ERROR_INPUT, "medium analogue: S/N of "
-		    "%.1f dB leaves less than 1 bit/s; as S/N -> 0 so does C "
-		    "= B log2(1 + S/N), and Eb/N0 stays above ln 2 = "
-		    "-1.59 dB; allowed: a larger S/N or more hertz",
-		    decibels(snr));
-	out->line_bps = medium_whole_bps(streams *
+	(void)err;
+	out->line_bps = medium_whole_bps((double)p->streams *
 	    shannon_bps(width_hz, snr));
 	out->channel_bps = fraction_floor(out->line_bps);
 	out->duplex = (enum duplex)p->duplex;
 	out->contention = p->contention;
 	if (p->gap_db > 0)
-		medium_add_step(out, "gap to capacity", medium_whole_bps(bps),
-		    "declared");
+		medium_add_step(out, "gap to capacity", medium_whole_bps(
+		    net_bps(p, load->direction)), "declared");
 	add_notes(p, width_hz, snr, out);
 	return 0;
 }

@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* Medium leased IP service: a rate that somebody promised at some level. */
 #include <assert.h>
+#include <string.h>
 
 #include "declare/medium_rows.h"
 #include "error.h"
@@ -43,9 +44,9 @@ capacity(const void *base, const struct medium_load *load,
 	struct fraction counted = load->octets[p->counted_at];
 
 	if (counted.num == 0)
-		return error_set(err, ERROR_INPUT, "medium ip-service: "
-		    "counted-at: the layers have no frames, allowed: packet, "
-		    "segment, payload");
+		return error_set(err, ERROR_INPUT, "medium ip-service: its "
+		    "rate is counted at %s, which packets without a transport "
+		    "do not have", level_name((enum layer_level)p->counted_at));
 	out->line_bps = fraction_multiply(
 	    fraction_whole(p->rate_bps[load->direction]),
 	    fraction_divide(load->octets[LEVEL_LINE], counted));
@@ -55,10 +56,21 @@ capacity(const void *base, const struct medium_load *load,
 	return 0;
 }
 
+/* Frames are counted where there are frames. */
+static bool
+suits(const void *base, const char *layer_name)
+{
+	const struct parameters *p = base;
+
+	return p->counted_at != LEVEL_FRAME ||
+	    strcmp(layer_name, "ethernet") == 0;
+}
+
 const struct medium medium_ip = {
 	.name = "ip-service",
 	.title = "leased IP service: a rate at a level",
 	.fields = fields,
+	.suits = suits,
 	.capacity = capacity,
 	.carries = (const char *const[]){ "ipv4", "ipv6", "ethernet", NULL },
 	.default_mtu_bytes = 1500,

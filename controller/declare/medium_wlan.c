@@ -153,13 +153,9 @@ capacity(const void *base, const struct medium_load *load,
 	struct wlan_access access;
 	struct wlan_exchange exchange;
 	struct wlan_phy phy;
-	uint64_t tcp_ns, packet_bytes;
+	uint64_t tcp_ns;
 
-	packet_bytes = fraction_floor(load->octets[LEVEL_PACKET]);
-	if (packet_bytes > PACKET_MAX_BYTES)
-		return error_set(err, ERROR_INPUT, "medium wlan: found an mtu "
-		    "of %llu B, allowed: at most %d B, an MSDU holds 2304 B",
-		    (unsigned long long)packet_bytes, PACKET_MAX_BYTES);
+	(void)err;
 	make_link(p, &phy, &access);
 	wlan_exchange_make(&phy, &access, octets_up(load->octets[LEVEL_LINE]),
 	    access.aggregated ? access.window_frames : 1, &exchange);
@@ -179,6 +175,7 @@ const struct medium medium_wlan = {
 	.check = wlan_check,
 	.capacity = capacity,
 	.carries = (const char *const[]){ "wlan", NULL },
+	.max_mtu_bytes = PACKET_MAX_BYTES,
 	.duplex = DUPLEX_SHARED,
 	.accuracy = ACCURACY_MODEL,
 	.accuracy_note = "model of one station in clean air, an upper limit: "

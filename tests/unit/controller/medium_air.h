@@ -84,6 +84,19 @@ air_noted(const struct medium_capacity *capacity, const char *text)
 	return false;
 }
 
+/* The same with more lines below the layers. */
+static inline void
+air_refused_with(const char *medium, const char *layers, const char *more,
+    const char *expected)
+{
+	char text[2048];
+
+	air_text(medium, layers, text, sizeof(text));
+	(void)snprintf(text + strlen(text), sizeof(text) - strlen(text), "%s",
+	    more);
+	circuit_refused(text, expected);
+}
+
 /* Read, but there is no ceiling. */
 static inline void
 air_impossible(const char *medium, const char *layers, const char *more,

@@ -180,9 +180,9 @@ the_limit_of_a_weak_signal_is_explained(void **state)
 	assert_int_equal(fraction_floor(capacity.line_bps), 1);
 	assert_int_equal(capacity.steps_count, 0);
 	assert_false(air_noted(&capacity, "signal below the noise"));
-	air_impossible("kind: analogue, bandwidth: 3.1 kHz, snr: -60 dB", IP,
+	air_refused_with("kind: analogue, bandwidth: 3.1 kHz, snr: -60 dB", IP,
 	    "", "Eb/N0 stays above ln 2 = -1.59 dB");
-	air_impossible("kind: analogue, bandwidth: 1 Hz, signal-power: "
+	air_refused_with("kind: analogue, bandwidth: 1 Hz, signal-power: "
 	    "0.000000000001 pW, noise-power: 1 GW", IP, "",
 	    "less than 1 bit/s");
 }
@@ -384,8 +384,8 @@ a_wrong_ip_service_is_refused_with_its_place(void **state)
 {
 	(void)state;
 	air_refused_all(ip_refusals, COUNT(ip_refusals), IP);
-	air_impossible("kind: ip-service, rate: 1 Mbit/s, counted-at: frame",
-	    IP, "", "the layers have no frames");
+	air_refused_with("kind: ip-service, rate: 1 Mbit/s, counted-at: frame",
+	    IP, "", "allowed there: ethernet");
 }
 
 int

@@ -310,7 +310,9 @@ static void
 a_packet_longer_than_an_msdu_is_refused(void **state)
 {
 	(void)state;
-	air_impossible(AC, CCMP, "mtu: 2297 B\n", "at most 2296 B");
+	air_refused_with(AC, CCMP, "mtu: 2297 B\n",
+	    "test:4:6: mtu: found 2297 B, allowed on medium wlan: at most "
+	    "2296 B");
 }
 
 #define W "kind: wlan, "
